@@ -1,0 +1,1 @@
+"""The exact leg, batched, and the closed forms of constant properties beside it."""

@@ -1,0 +1,1 @@
+"""Couple and module: electrodes, spreading, gap, circuit and thermal path of a batch of modules."""

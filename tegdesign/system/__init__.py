@@ -1,0 +1,1 @@
+"""Source and sink, load, and the operating point of a batch of generators."""

@@ -1,0 +1,17 @@
+"""Source and sink are one idea: how much heat flows at a given face temperature? One file a kind."""
+
+from __future__ import annotations
+
+from typing import Annotated
+
+from pydantic import Field
+
+from tegdesign.system.boundary.base import Boundary
+from tegdesign.system.boundary.film import Film
+from tegdesign.system.boundary.heat import FixedHeat
+from tegdesign.system.boundary.stream import Stream
+from tegdesign.system.boundary.surface import Surface
+
+AnyBoundary = Annotated[Surface | FixedHeat | Film | Stream, Field(discriminator="kind")]
+
+__all__ = ["AnyBoundary", "Boundary", "Film", "FixedHeat", "Stream", "Surface"]

@@ -1,0 +1,27 @@
+"""The load that draws the most power of the whole system, thermal resistances included."""
+
+from __future__ import annotations
+
+from typing import Literal
+
+from tegdesign.material.curve import Array
+from tegdesign.system.load.base import Load, LoadLaw, Terminal, numbers
+
+
+def most_power(at: Terminal, number: Array) -> tuple[Array, Array]:
+    """Return dP/dI = V + I dV/dI and its slope, V taken as straight in I; exact once the condition is met."""
+    return at.voltage + at.current * at.voltage_slope, 2 * at.voltage_slope
+
+
+class Matched(Load):
+    """Tracking converter or chosen resistor at the maximum power point."""
+
+    kind: Literal["matched"] = "matched"
+
+    def law(self, series: Array, parallel: Array) -> LoadLaw:
+        """Return dP/dI = 0."""
+        return LoadLaw(most_power, numbers(0.0, series))
+
+    def words(self) -> str:
+        """Return the load in words."""
+        return "matched load (most power of the whole system)"

@@ -1,0 +1,279 @@
+"""Junction temperatures and current together, for a batch of generators: Newton's method with exact derivatives."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, fields
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from tegdesign.errors import ConvergenceError
+from tegdesign.leg.exact import Slopes
+from tegdesign.material.curve import Array
+from tegdesign.module.module import Modules, flows
+from tegdesign.system.law import Law
+from tegdesign.system.load.base import LoadLaw, Terminal
+
+BALANCE = 1e-9  # largest allowed misfit of the heat balance, relative to the heat input
+
+
+@dataclass(frozen=True)
+class OperatingPoint:
+    """State of one module of every generator of a batch, arrays (B,), SI units.
+
+    Heats and power are per module; ``balance_residual`` [W] is heat in by the law of the source, less heat out by
+    the law of the sink, less power and lead loss. ``face_*`` are the outer plate faces.
+    """
+
+    hot_junction: Array
+    cold_junction: Array
+    hot_face: Array
+    cold_face: Array
+    current: Array
+    voltage: Array
+    open_voltage: Array
+    internal_resistance: Array
+    leg_resistance_n: Array
+    leg_resistance_p: Array
+    electrode_resistance: Array
+    heat_in: Array
+    heat_out: Array
+    bypass: Array
+    balance_residual: Array
+    voltage_slope: Array
+    heat_slope: Array
+    converged: NDArray[np.bool_]
+    iterations: NDArray[np.intp]
+
+    @property
+    def power(self) -> Array:
+        """Electrical power at the leads of one module [W]."""
+        return self.voltage * self.current
+
+    @property
+    def efficiency(self) -> Array:
+        """Power over heat drawn from the source face; 0 without heat."""
+        with np.errstate(divide="ignore", invalid="ignore"):
+            return np.where(self.heat_in != 0, self.power / self.heat_in, 0.0)
+
+    def take(self, which: Any) -> OperatingPoint:
+        """Return the designs ``which``."""
+        return OperatingPoint(**{f.name: getattr(self, f.name)[which] for f in fields(self)})
+
+
+def first_guess(modules: Modules, source: Law, sink: Law) -> tuple[Array, Array, Array]:
+    """Return junction temperatures and current by conduction alone, with the Peltier heat as extra conductance."""
+    hot = np.full(modules.size, 400.0)
+    cold = np.full(modules.size, 320.0)
+    current = np.zeros(modules.size)
+    for _ in range(5):
+        mean, difference = (hot + cold) / 2, np.maximum(hot - cold, 1.0)
+        seebeck, resistance, conductance = _couple_at(modules, mean, hot, cold)
+        zt = seebeck**2 * mean / (resistance * conductance)
+        passing = modules.bypass(hot, np.minimum(cold, hot - 1.0))[0] / difference
+        k = conductance * (1 + zt / 2) + np.maximum(passing, 0.0)
+        # a (T + R q) + b q = c with q = k (Th - Tc); the sink takes -q
+        k_hot = (source.a * modules.resistance_hot + source.b) * k
+        k_cold = (sink.a * modules.resistance_cold + sink.b) * k
+        determinant = (source.a + k_hot) * (sink.a + k_cold) - k_hot * k_cold
+        hot = (source.c * (sink.a + k_cold) + k_hot * sink.c) / determinant
+        cold = (sink.c * (source.a + k_hot) + k_cold * source.c) / determinant
+        hot, cold = np.clip(hot, 60.0, 4000.0), np.clip(cold, 50.0, 3900.0)
+        current = seebeck * np.maximum(hot - cold, 0.0) / (2 * resistance)
+    return hot, cold, current
+
+
+def _couple_at(modules: Modules, mean: Array, hot: Array, cold: Array) -> tuple[Array, Array, Array]:
+    """Return Seebeck coefficient, resistance and conductance of the modules at mean properties."""
+    seebeck, resistance, conductance = np.zeros(mean.shape), np.zeros(mean.shape), np.zeros(mean.shape)
+    for which, area, sign in ((modules.n, modules.area_n, -1.0), (modules.p, modules.area_p, 1.0)):
+        area = np.broadcast_to(area, mean.shape)
+        for k in np.unique(which):
+            m, material = which == k, modules.materials[k]
+            t = np.clip(mean[m], *material.range)
+            seebeck[m] += sign * material.seebeck_coefficient(t)
+            resistance[m] += material.resistivity(t) / area[m]
+            conductance[m] += material.thermal_conductivity(t) * area[m]
+    return (
+        modules.couples * seebeck,
+        modules.couples * modules.leg_length * resistance + 2 * modules.contacts + modules.lead_resistance,
+        modules.couples * conductance / modules.leg_length,
+    )
+
+
+def operating_point(
+    modules: Modules,
+    source: Law,
+    sink: Law,
+    load: LoadLaw,
+    *,
+    tolerance: float = 1e-11,
+    max_iterations: int = 60,
+    check: bool = True,
+    guess: tuple[Array, Array, Array] | None = None,
+) -> OperatingPoint:
+    """Solve a batch of generators for both junction temperatures and the current of one module.
+
+    Parameters
+    ----------
+    modules, source, sink, load
+        Batches of the same size B; source and sink laws are per module.
+    tolerance : float
+        Relative size of the last Newton step in temperature and current.
+    check : bool
+        Raise where a design did not converge; otherwise look at ``converged``.
+    guess : tuple of arrays, optional
+        Hot junction, cold junction, current to start from.
+
+    Raises
+    ------
+    ConvergenceError
+        No operating point was found, or the heat balance does not close to 1e-9 of the heat input.
+    """
+    size = modules.size
+    hot, cold, current = (np.array(v, dtype=float) for v in (guess or first_guess(modules, source, sink)))
+    if load.fixed:
+        current = load.number.copy()
+    best: list[Any] = [None] * size
+    result = _Record(size)
+    todo = np.arange(size)
+    limit = np.full(size, np.inf)
+    part, s, k, law = modules, source, sink, load
+    for iteration in range(1, max_iterations + 1):
+        h, c, i = hot[todo], cold[todo], current[todo]
+        now = flows(part, h, c, i)
+        step_h, step_c, step_i, terminal, misfit = _newton(part, s, k, law, h, c, i, now)
+        size_now = np.maximum(np.abs(step_h), np.abs(step_c)) / h
+        with np.errstate(divide="ignore", invalid="ignore"):
+            size_now = np.maximum(size_now, np.where(step_i == 0, 0.0, np.abs(step_i) / np.maximum(np.abs(i), 1e-300)))
+        done = (size_now < tolerance) | ((size_now < 1e-9) & (size_now >= 0.5 * limit[todo]))
+        done &= now.converged
+        limit[todo] = size_now
+        lost = ~np.isfinite(size_now) | ~now.converged
+        result.store(todo, h, c, i, now, terminal, misfit, part, done, iteration)
+        # damping: the legs stay warmer on the hot side, the current below the short-circuit current
+        with np.errstate(invalid="ignore"):
+            old = h - c
+            shrink = np.where(old + step_h - step_c < 0.2 * old, 0.8 * old / np.maximum(step_c - step_h, 1e-300), 1.0)
+            reach = np.maximum(np.abs(step_h), np.abs(step_c))
+            shrink = np.minimum(shrink, np.minimum(1.0, 400.0 / np.maximum(reach, 1e-300)))
+            hot[todo], cold[todo] = h + shrink * step_h, c + shrink * step_c
+            if not law.fixed:
+                ceiling = 0.95 * now.open_voltage / now.internal_resistance
+                current[todo] = np.clip(i + step_i, 0.02 * ceiling, ceiling)
+        go_on = ~done & ~lost
+        if not go_on.any():
+            break
+        todo = todo[go_on]
+        part, s, k, law = modules.take(todo), source.take(todo), sink.take(todo), load.take(todo)
+    del best
+    point = result.freeze()
+    if check:
+        _insist(point)
+    return point
+
+
+def _newton(
+    modules: Modules, source: Law, sink: Law, load: LoadLaw, hot: Array, cold: Array, current: Array, now: Any
+) -> tuple[Array, Array, Array, Terminal, tuple[Array, Array]]:
+    """Return the steps in both temperatures and the current; the two heat equations are eliminated by hand."""
+    rh, rc = modules.resistance_hot, modules.resistance_cold
+    qh, qc = now.heat_hot_slopes, now.heat_cold_slopes
+    weight_h, weight_c = source.a * rh + source.b, -(sink.a * rc + sink.b)
+    f_h = source.misfit(hot + rh * now.heat_hot, now.heat_hot)
+    f_c = sink.misfit(cold - rc * now.heat_cold, -now.heat_cold)
+    m11, m12, m1 = source.a + weight_h * qh.hot, weight_h * qh.cold, weight_h * qh.current
+    m21, m22, m2 = weight_c * qc.hot, sink.a + weight_c * qc.cold, weight_c * qc.current
+    with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
+        determinant = m11 * m22 - m12 * m21
+
+        def solve(one: Array, two: Array) -> tuple[Array, Array]:
+            return (one * m22 - two * m12) / determinant, (m11 * two - m21 * one) / determinant
+
+        free_h, free_c = solve(-f_h, -f_c)  # step at given current
+        by_i_h, by_i_c = solve(-m1, -m2)  # junctions follow the current
+        v = now.voltage_slopes
+        v_slope = v.current + v.hot * by_i_h + v.cold * by_i_c
+        q_slope = qh.current + qh.hot * by_i_h + qh.cold * by_i_c
+        moved_v = now.voltage + v.hot * free_h + v.cold * free_c
+        moved_q = now.heat_hot + qh.hot * free_h + qh.cold * free_c
+        terminal = Terminal(current, moved_v, v_slope, moved_q, q_slope)
+        value, slope = load.condition(terminal, load.number)
+        step_i = -value / slope
+        misfit_h = np.where(weight_h != 0, f_h / np.where(weight_h != 0, weight_h, 1.0), 0.0)
+        misfit_c = np.where(weight_c != 0, f_c / np.where(weight_c != 0, weight_c, 1.0), 0.0)
+    return free_h + by_i_h * step_i, free_c + by_i_c * step_i, step_i, terminal, (misfit_h, misfit_c)
+
+
+class _Record:
+    """Collects the last evaluation of every design."""
+
+    def __init__(self, size: int) -> None:
+        self.values = {f.name: np.full(size, np.nan) for f in fields(OperatingPoint)}
+        self.values["converged"] = np.zeros(size, dtype=bool)
+        self.values["iterations"] = np.zeros(size, dtype=np.intp)
+
+    def store(
+        self,
+        where: NDArray[np.intp],
+        hot: Array,
+        cold: Array,
+        current: Array,
+        now: Any,
+        terminal: Terminal,
+        misfit: tuple[Array, Array],
+        modules: Modules,
+        done: NDArray[np.bool_],
+        iteration: int,
+    ) -> None:
+        """Keep one evaluation; heats in the balance are those of the boundary laws."""
+        heat_in, heat_out = now.heat_hot - misfit[0], now.heat_cold - misfit[1]
+        lost = current**2 * modules.lead_resistance
+        new = {
+            "hot_junction": hot,
+            "cold_junction": cold,
+            "hot_face": hot + modules.resistance_hot * now.heat_hot,
+            "cold_face": cold - modules.resistance_cold * now.heat_cold,
+            "current": current,
+            "voltage": now.voltage,
+            "open_voltage": now.open_voltage,
+            "internal_resistance": now.internal_resistance,
+            "leg_resistance_n": now.leg_resistance_n,
+            "leg_resistance_p": now.leg_resistance_p,
+            "electrode_resistance": now.electrode_resistance,
+            "heat_in": now.heat_hot,
+            "heat_out": now.heat_cold,
+            "bypass": now.bypass,
+            "balance_residual": heat_in - heat_out - now.voltage * current - lost,
+            "voltage_slope": terminal.voltage_slope,
+            "heat_slope": terminal.heat_slope,
+            "converged": done,
+            "iterations": np.full(where.size, iteration),
+        }
+        for name, value in new.items():
+            self.values[name][where] = value
+
+    def freeze(self) -> OperatingPoint:
+        """Return the point; what does not balance has not converged."""
+        v = self.values
+        with np.errstate(invalid="ignore"):
+            balanced = np.abs(v["balance_residual"]) <= BALANCE * np.abs(v["heat_in"])
+        v["converged"] &= balanced | (v["heat_in"] == 0)
+        return OperatingPoint(**v)
+
+
+def _insist(point: OperatingPoint) -> None:
+    if np.all(point.converged):
+        return
+    bad = np.flatnonzero(~point.converged)
+    k = bad[0]
+    raise ConvergenceError(
+        f"operating point not found for {bad.size} of {point.converged.size} designs; the first (number {k}) stopped at "
+        f"junctions {point.hot_junction[k]:.1f} K and {point.cold_junction[k]:.1f} K, {point.current[k]:.4g} A, heat "
+        f"balance residual {point.balance_residual[k]:.2g} W; a current too large for the temperature difference or a "
+        "source that cannot be balanced are the usual causes"
+    )
+
+
+__all__ = ["OperatingPoint", "Slopes", "first_guess", "operating_point"]
