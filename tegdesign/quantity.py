@@ -106,7 +106,7 @@ def write(value: float, target: str, shown: str | None = None, difference: bool 
     for unit in (shown or target, target):
         factor, offset = conversion(unit, target, difference)
         number = (value - offset) / factor
-        for digits in (4, 6, 9, 12, 15, 17):
+        for digits in (6, 9, 12, 15, 17):
             text = f"{number:.{digits}g} {unit}".strip()
             if parse(text, target, difference) == value:
                 return text

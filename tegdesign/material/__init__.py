@@ -1,0 +1,1 @@
+"""What Seebeck coefficient, resistivity and thermal conductivity a material has at a temperature."""
