@@ -13,7 +13,7 @@ from tegdesign.leg.exact import Slopes
 from tegdesign.material.curve import Array
 from tegdesign.module.module import Modules, flows
 from tegdesign.system.law import Law
-from tegdesign.system.load.base import LoadLaw, Terminal
+from tegdesign.system.load.base import LoadLaw, MixedLoads, Terminal
 
 BALANCE = 1e-9  # largest allowed misfit of the heat balance, relative to the heat input
 
@@ -106,7 +106,7 @@ def operating_point(
     modules: Modules,
     source: Law,
     sink: Law,
-    load: LoadLaw,
+    load: LoadLaw | MixedLoads,
     *,
     tolerance: float = 1e-11,
     max_iterations: int = 60,
@@ -133,9 +133,8 @@ def operating_point(
     """
     size = modules.size
     hot, cold, current = (np.array(v, dtype=float) for v in (guess or first_guess(modules, source, sink)))
-    if load.fixed:
-        current = load.number.copy()
-    best: list[Any] = [None] * size
+    free = np.isnan(load.given)
+    current = np.where(free, current, load.given)
     result = _Record(size)
     todo = np.arange(size)
     limit = np.full(size, np.inf)
@@ -159,15 +158,13 @@ def operating_point(
             reach = np.maximum(np.abs(step_h), np.abs(step_c))
             shrink = np.minimum(shrink, np.minimum(1.0, 400.0 / np.maximum(reach, 1e-300)))
             hot[todo], cold[todo] = h + shrink * step_h, c + shrink * step_c
-            if not law.fixed:
-                ceiling = 0.95 * now.open_voltage / now.internal_resistance
-                current[todo] = np.clip(i + step_i, 0.02 * ceiling, ceiling)
+            ceiling = 1.02 * now.open_voltage / now.internal_resistance
+            current[todo] = np.where(free[todo], np.clip(i + step_i, 0.0, ceiling), i)
         go_on = ~done & ~lost
         if not go_on.any():
             break
         todo = todo[go_on]
         part, s, k, law = modules.take(todo), source.take(todo), sink.take(todo), load.take(todo)
-    del best
     point = result.freeze()
     if check:
         _insist(point)
@@ -175,7 +172,7 @@ def operating_point(
 
 
 def _newton(
-    modules: Modules, source: Law, sink: Law, load: LoadLaw, hot: Array, cold: Array, current: Array, now: Any
+    modules: Modules, source: Law, sink: Law, load: LoadLaw | MixedLoads, hot: Array, cold: Array, current: Array, now: Any
 ) -> tuple[Array, Array, Array, Terminal, tuple[Array, Array]]:
     """Return the steps in both temperatures and the current; the two heat equations are eliminated by hand."""
     rh, rc = modules.resistance_hot, modules.resistance_cold
@@ -199,7 +196,7 @@ def _newton(
         moved_v = now.voltage + v.hot * free_h + v.cold * free_c
         moved_q = now.heat_hot + qh.hot * free_h + qh.cold * free_c
         terminal = Terminal(current, moved_v, v_slope, moved_q, q_slope)
-        value, slope = load.condition(terminal, load.number)
+        value, slope = load.evaluate(terminal)
         step_i = -value / slope
         misfit_h = np.where(weight_h != 0, f_h / np.where(weight_h != 0, weight_h, 1.0), 0.0)
         misfit_c = np.where(weight_c != 0, f_c / np.where(weight_c != 0, weight_c, 1.0), 0.0)

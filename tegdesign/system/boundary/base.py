@@ -41,9 +41,8 @@ class Boundary(Part):
 
     def words(self) -> str:
         """Return the boundary in words, with units, for condition lines."""
-        return ", ".join(
-            f"{name.replace('_', ' ')} {value}" for name, value in self.model_dump(exclude_none=True).items()
-        )
+        written = self.model_dump(exclude_defaults=True, exclude={"kind"})
+        return ", ".join([self.kind, *(f"{name.replace('_', ' ')} {value}" for name, value in written.items())])
 
 
 def fin_factor(area_enlargement: float, fin_efficiency: float) -> float:

@@ -6,7 +6,7 @@ from typing import Annotated
 
 from pydantic import Field
 
-from tegdesign.system.load.base import Load, LoadLaw
+from tegdesign.system.load.base import Load, LoadLaw, MixedLoads, mixed
 from tegdesign.system.load.efficient import BestEfficiency
 from tegdesign.system.load.given import GivenCurrent
 from tegdesign.system.load.matched import Matched
@@ -14,4 +14,4 @@ from tegdesign.system.load.resistance import Resistance
 
 AnyLoad = Annotated[Matched | BestEfficiency | Resistance | GivenCurrent, Field(discriminator="kind")]
 
-__all__ = ["AnyLoad", "BestEfficiency", "GivenCurrent", "Load", "LoadLaw", "Matched", "Resistance"]
+__all__ = ["AnyLoad", "BestEfficiency", "GivenCurrent", "Load", "LoadLaw", "Matched", "MixedLoads", "Resistance", "mixed"]

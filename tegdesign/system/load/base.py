@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from abc import abstractmethod
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from typing import Any, NamedTuple
 
 import numpy as np
@@ -28,11 +28,54 @@ class LoadLaw(NamedTuple):
 
     condition: Callable[[Terminal, Array], tuple[Array, Array]]
     number: Array
-    fixed: bool = False  # the current is given, so it is not limited to the first quadrant
+    fixed: bool = False  # the current is given by ``number``, so it needs no guess and no bounds
 
     def take(self, which: Any) -> LoadLaw:
         """Return the law of the designs ``which``."""
         return self._replace(number=self.number[which])
+
+    def evaluate(self, at: Terminal) -> tuple[Array, Array]:
+        """Return the condition and its slope by current."""
+        return self.condition(at, self.number)
+
+    @property
+    def given(self) -> Array:
+        """Given current [A], nan where the load decides."""
+        return self.number if self.fixed else np.full(self.number.shape, np.nan)
+
+
+class MixedLoads(NamedTuple):
+    """Loads of several kinds in one batch: each design has its own."""
+
+    laws: tuple[LoadLaw, ...]
+    which: Array
+
+    def take(self, chosen: Any) -> MixedLoads:
+        """Return the laws of the designs ``chosen``."""
+        return MixedLoads(tuple(law.take(chosen) for law in self.laws), self.which[chosen])
+
+    def evaluate(self, at: Terminal) -> tuple[Array, Array]:
+        """Return the condition and its slope by current."""
+        both = [law.evaluate(at) for law in self.laws]
+        return tuple(np.choose(self.which, [pair[k] for pair in both]) for k in (0, 1))  # type: ignore[return-value]
+
+    @property
+    def given(self) -> Array:
+        """Given current [A], nan where the load decides."""
+        return np.asarray(np.choose(self.which, [law.given for law in self.laws]))
+
+
+def mixed(laws: Sequence[LoadLaw]) -> MixedLoads:
+    """Return one batch made of several, in their order."""
+    sizes = [law.number.size for law in laws]
+    total = sum(sizes)
+    spread_out, start = [], 0
+    for law, size in zip(laws, sizes, strict=True):
+        number = np.ones(total)
+        number[start : start + size] = law.number
+        spread_out.append(law._replace(number=number))
+        start += size
+    return MixedLoads(tuple(spread_out), np.repeat(np.arange(len(laws)), sizes))
 
 
 class Load(Part):

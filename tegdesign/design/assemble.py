@@ -1,0 +1,90 @@
+"""From typed tables to the arrays that the solver works on."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import Any
+
+import numpy as np
+
+from tegdesign.design.design import Design
+from tegdesign.design.parts import Losses, Stack
+from tegdesign.errors import InputError
+from tegdesign.material.library import find
+from tegdesign.material.material import Material
+from tegdesign.module.module import Modules
+
+
+def material(name: str, polarity: str, folder: str | None) -> Material:
+    """Return a material by name and insist on its polarity.
+
+    Raises
+    ------
+    InputError
+        Unknown name, or the material is of the other polarity.
+    """
+    found = find(name, [folder] if folder else [])
+    if found.polarity != polarity:
+        raise InputError(
+            f"materials.{polarity}: '{name}' is {found.polarity}-type; choose a {polarity}-type material "
+            f"(tegdesign materials --polarity {polarity} lists them)"
+        )
+    return found
+
+
+def stack_values(stack: Stack, losses: Losses) -> dict[str, float]:
+    """Return the members of ``Modules`` that come from the stack, with losses switched off where asked."""
+    conductivity, exponent, transparent = stack.filler_law
+    rays = losses.radiation and losses.bypass and transparent
+    values: dict[str, float] = {
+        "contact_resistivity_n": stack.contact_resistivity_n * losses.contacts,
+        "contact_resistivity_p": stack.contact_resistivity_p * losses.contacts,
+        "contact_thermal": stack.contact_thermal_resistance * losses.contacts,
+        "electrode_thickness": stack.electrode_thickness * losses.electrodes,
+        "electrode_resistivity": stack.electrode_resistivity,
+        "electrode_coefficient": stack.electrode_temperature_coefficient,
+        "electrode_conductivity": stack.electrode_conductivity,
+        "filler_conductivity": conductivity * losses.bypass,
+        "filler_exponent": exponent,
+        "emittance_hot": stack.emittance_hot * rays,
+        "emittance_cold": stack.emittance_cold * rays,
+        "edge_conductance": stack.edge_conductance * losses.bypass,
+        "lead_resistance": stack.lead_resistance * losses.leads,
+        "spreading": float(losses.spreading and losses.substrates),
+    }
+    for side, plate in (("hot", stack.hot), ("cold", stack.cold)):
+        values[f"interface_{side}"] = plate.interface * losses.interfaces
+        values[f"substrate_thickness_{side}"] = plate.substrate_thickness * losses.substrates
+        values[f"substrate_conductivity_{side}"] = plate.substrate_conductivity
+    return values
+
+
+def modules_of(designs: Sequence[Design], losses: Sequence[Losses] | None = None) -> Modules:
+    """Return designs of one pair of materials as a batch, each with its own or with the given loss switches.
+
+    Raises
+    ------
+    InputError
+        The designs are not all of the same pair.
+    """
+    chosen = designs[0].materials
+    if any((d.materials.n, d.materials.p) != (chosen.n, chosen.p) for d in designs):
+        raise InputError("materials differ between the designs of one table; rate them one by one")
+    pair = [material(getattr(chosen, side), side, chosen.folder) for side in ("n", "p")]
+    switches = losses or [d.losses for d in designs]
+    rows = [{**stack_values(d.stack, off), **_geometry(d)} for d, off in zip(designs, switches, strict=True)]
+    columns: dict[str, Any] = {name: np.array([row[name] for row in rows], dtype=float) for name in rows[0]}
+    size = len(rows)
+    return Modules(pair, np.zeros(size, dtype=np.intp), np.ones(size, dtype=np.intp), **columns)
+
+
+def _geometry(design: Design) -> dict[str, float]:
+    g = design.module
+    return {
+        "leg_length": g.leg_length,
+        "side_n": g.leg_side_n,
+        "side_p": g.leg_side_p,
+        "pitch": g.pitch,
+        "couples": g.couples,
+        "footprint": g.width * g.depth,
+    }

@@ -1,0 +1,127 @@
+"""The brief: what is asked of the generator."""
+
+from __future__ import annotations
+
+import os
+from typing import Annotated
+
+from pydantic import Field, field_validator, model_validator
+
+from tegdesign.design.parts import (
+    Aim,
+    Count,
+    Length,
+    Losses,
+    MaterialUse,
+    Require,
+    Stack,
+    Thickness,
+)
+from tegdesign.document import load
+from tegdesign.errors import InputError
+from tegdesign.quantity import write
+from tegdesign.system.boundary import AnyBoundary, FixedHeat
+from tegdesign.system.load import AnyLoad, Matched
+from tegdesign.system.model import Part
+
+
+class Pair(MaterialUse):
+    """Materials that may be used: a name, a list of names, or nothing for every one of the library."""
+
+    n: list[str] = []
+    p: list[str] = []
+
+    @field_validator("n", "p", mode="before")
+    @classmethod
+    def _one_or_many(cls, value: object) -> object:
+        return [value] if isinstance(value, str) else value
+
+
+class Limits(Part):
+    """What can be built and where it must fit."""
+
+    footprint: tuple[Length, Length]
+    modules: Count = 1
+    leg_length: tuple[Length, Length] = (0.5e-3, 10e-3)
+    leg_side: tuple[Length, Length] = (0.6e-3, 8e-3)
+    gap: Length = 0.5e-3
+    edge_margin: Thickness = 1e-3
+    couples: tuple[Count, Count] = (2, 2000)
+    slenderness: Annotated[float, Field(gt=0)] = 8.0
+
+    @model_validator(mode="after")
+    def _possible(self) -> Limits:
+        for name in ("leg_length", "leg_side", "couples"):
+            low, high = getattr(self, name)
+            if low > high:
+                raise ValueError(f"{name} is upside down: {low:g} is above {high:g}")
+        room = [side - 2 * self.edge_margin for side in self.footprint]
+        cell = self.leg_side[0] + self.gap
+        if min(room) < cell or max(room) < 2 * cell:
+            raise ValueError(
+                f"footprint {write(self.footprint[0], 'm', 'mm')} x {write(self.footprint[1], 'm', 'mm')} has no room for "
+                f"one couple: two legs of {write(self.leg_side[0], 'm', 'mm')} with gaps of {write(self.gap, 'm', 'mm')} and "
+                f"an edge of {write(self.edge_margin, 'm', 'mm')}; enlarge the footprint or allow thinner legs"
+            )
+        return self
+
+
+class Workshop(Part):
+    """Steps to which dimensions are rounded."""
+
+    leg_length_step: Length = 0.05e-3
+    leg_side_step: Length = 0.05e-3
+    gap_step: Length = 0.05e-3
+
+
+class Brief(Part):
+    """A job for ``size`` or ``compare``: source, sink, load, materials, limits, requirements and the aim."""
+
+    title: str = "untitled"
+    revision: str = "A"
+    aim: Aim = "power"
+    source: AnyBoundary
+    sink: AnyBoundary
+    load: AnyLoad = Matched()
+    materials: Pair = Pair()
+    limits: Limits
+    require: Require = Require()
+    stack: Stack = Stack()
+    losses: Losses = Losses()
+    workshop: Workshop = Workshop()
+
+    @model_validator(mode="after")
+    def _direction(self) -> Brief:
+        check_direction(self.source, self.sink)
+        return self
+
+
+def check_direction(source: AnyBoundary, sink: AnyBoundary) -> None:
+    """Refuse a source that is not hotter than the sink, and a sink of fixed heat."""
+    if isinstance(sink, FixedHeat):
+        raise ValueError("sink of kind 'heat' has no temperature to settle at; use a surface, film or stream")
+    hot, cold = source.reference_temperature, sink.reference_temperature
+    if not isinstance(source, FixedHeat) and hot <= cold:
+        raise ValueError(
+            f"source at {hot:.2f} K is not hotter than the sink at {cold:.2f} K; exchange them or mend a temperature"
+        )
+
+
+def read_brief(path: str | os.PathLike[str]) -> Brief:
+    """Return the brief in a TOML file.
+
+    Raises
+    ------
+    InputError
+        The file cannot be used; the message names file, line, value, limit and the mend.
+    """
+    return load(path, Brief)
+
+
+def as_brief(brief: Brief | str | os.PathLike[str]) -> Brief:
+    """Return a brief given as one or as a path."""
+    if isinstance(brief, Brief):
+        return brief
+    if not isinstance(brief, (str, os.PathLike)):
+        raise InputError(f"expected a Brief or the path of one, got {type(brief).__name__}")
+    return read_brief(brief)

@@ -1,0 +1,382 @@
+"""Rate a given design: its states, limits, losses, ceiling, data range and cautions."""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from tegdesign.design.assemble import modules_of
+from tegdesign.design.caution import cautions
+from tegdesign.design.design import Design, as_design
+from tegdesign.design.evaluate import Candidates, Evaluation, Job
+from tegdesign.design.parts import Losses
+from tegdesign.design.rating import (
+    Ceiling,
+    Check,
+    DataUse,
+    Loss,
+    Mass,
+    Rating,
+    Rung,
+    Sanity,
+    State,
+)
+from tegdesign.errors import ConvergenceError, DataRangeError
+from tegdesign.leg.closed_form import Couple, best_efficiency, power_ceiling
+from tegdesign.material.material import Material
+from tegdesign.module.module import Modules
+from tegdesign.system.boundary import AnyBoundary
+from tegdesign.system.law import join
+from tegdesign.system.load import AnyLoad, BestEfficiency, GivenCurrent, Matched, Resistance, mixed
+from tegdesign.system.operating_point import OperatingPoint, operating_point
+
+OPEN = GivenCurrent.model_construct(current=0.0)
+SHORT = Resistance.model_construct(resistance=0.0)
+
+
+@dataclass(frozen=True)
+class Ask:
+    """One state to be solved: a name, the boundaries, the load, the loss switches."""
+
+    name: str
+    source: AnyBoundary
+    sink: AnyBoundary
+    load: AnyLoad
+    losses: Losses
+    required: bool = True  # raise if it is not found; otherwise leave it out with a note
+
+
+def rate(design: Design | str | os.PathLike[str], *, refuse_outside_data: bool = True) -> Rating:
+    """Return the rating of a design: rated state, open circuit, both optima, short circuit, losses, cautions.
+
+    Raises
+    ------
+    InputError
+        The design cannot be read or is impossible.
+    DataRangeError
+        A leg would be used farther outside its data than the design allows (not raised without
+        ``refuse_outside_data``: then the failed check stands in the result).
+    ConvergenceError
+        A state has no operating point.
+    """
+    design = as_design(design)
+    asks = [
+        Ask("rated", design.source, design.sink, design.load, design.losses),
+        Ask("open circuit", design.source, design.sink, OPEN, design.losses),
+        Ask("most power", design.source, design.sink, Matched(), design.losses),
+        Ask("best efficiency", design.source, design.sink, BestEfficiency(), design.losses),
+        Ask("short circuit", design.source, design.sink, SHORT, design.losses, required=False),
+    ]
+    without = [name for name in _SWITCHED if getattr(design.losses, name)]
+    asks += [
+        Ask(name, design.source, design.sink, design.load, design.losses.model_copy(update={name: False}), False)
+        for name in without
+    ]
+    modules, point = solve(design, asks)
+    base = len(asks) - len(without)
+    states, notes = [], []
+    for k, ask in enumerate(asks[:base]):
+        if point.converged[k]:
+            states.append(state_of(design, ask, modules, point, k))
+        else:
+            notes.append(f"{ask.name}: no steady state with temperature falling all along the legs; left out")
+    pair = (modules.materials[0], modules.materials[1])
+    evaluation = _as_evaluation(design, pair, point)
+    checks = tuple(_checks(evaluation))
+    if refuse_outside_data:
+        insist_on_data(checks, pair, design.materials.hold_outside_data)
+    rated = states[0]
+    bare = Rating(
+        design=design,
+        materials=pair,
+        states=tuple(states),
+        checks=checks,
+        data=tuple(_data(states, pair)),
+        losses=tuple(_losses(states, modules, point, without, base, design.module.modules)),
+        ceiling=_ceiling(design, modules, pair, rated),
+        sanity=_sanity(modules, pair, rated, design),
+        masses=tuple(_masses(design, pair)),
+        cautions=(),
+        notes=tuple(notes),
+    )
+    return replace(bare, cautions=cautions(bare))
+
+
+_SWITCHED = tuple(Losses.model_fields)
+
+
+def solve(design: Design, asks: Sequence[Ask]) -> tuple[Modules, OperatingPoint]:
+    """Solve several states of one design in one batch.
+
+    Raises
+    ------
+    ConvergenceError
+        A required state has no operating point.
+    """
+    return solve_all([design] * len(asks), asks)
+
+
+def solve_all(designs: Sequence[Design], asks: Sequence[Ask]) -> tuple[Modules, OperatingPoint]:
+    """Solve one state of each design in one batch; the designs share a pair of materials.
+
+    Raises
+    ------
+    ConvergenceError
+        A required state has no operating point.
+    """
+    modules = modules_of(designs, [ask.losses for ask in asks])
+    areas, counts, series, parallel = (
+        [np.array([float(v)]) for v in column]
+        for column in zip(
+            *(
+                (g.width * g.depth, g.modules, g.modules_in_series, g.modules_in_parallel)
+                for g in (d.module for d in designs)
+            ),
+            strict=True,
+        )
+    )
+    point = operating_point(
+        modules,
+        join([ask.source.law(a, n) for ask, a, n in zip(asks, areas, counts, strict=True)]),
+        join([ask.sink.law(a, n) for ask, a, n in zip(asks, areas, counts, strict=True)]),
+        mixed([ask.load.law(s, p) for ask, s, p in zip(asks, series, parallel, strict=True)]),
+        check=False,
+    )
+    for k, ask in enumerate(asks):
+        if ask.required and not point.converged[k]:
+            raise ConvergenceError(
+                f"{ask.name}: no operating point found ({ask.load.words()}; source {ask.source.words()}; sink "
+                f"{ask.sink.words()}); the last try had junctions at {point.hot_junction[k]:.1f} K and "
+                f"{point.cold_junction[k]:.1f} K; check the current and the temperatures"
+            )
+    return modules, point
+
+
+def _as_evaluation(design: Design, pair: tuple[Material, Material], point: OperatingPoint) -> Evaluation:
+    """Return the design as a batch of one, so that its limits are those of the sizing."""
+    g = design.module
+    job = Job(
+        design.source, design.sink, design.load, design.stack, design.losses, design.require, design.aim,
+        design.materials.hold_outside_data, pair,
+    )  # fmt: skip
+    numbers = (
+        g.leg_length, g.leg_side_n, g.leg_side_p, g.pitch, g.couples, g.width * g.depth, g.modules_in_series,
+        g.modules_in_parallel,
+    )  # fmt: skip
+    geometry = Candidates(np.zeros(1, dtype=np.intp), np.ones(1, dtype=np.intp), *(np.full(1, float(v)) for v in numbers))
+    return Evaluation(job, geometry, point.take([0]), point.take([1]))
+
+
+def _checks(evaluation: Evaluation) -> Iterator[Check]:
+    for limit in evaluation.limits:
+        passed = bool(limit.violation[0] <= 1e-9)
+        yield Check(
+            limit.key, limit.state, float(limit.value[0]), float(limit.bound[0]), limit.unit, limit.sense, passed
+        )
+
+
+def insist_on_data(checks: Sequence[Check], pair: tuple[Material, Material], hold: float) -> None:
+    """Refuse a design that uses material data farther outside their range than allowed.
+
+    Raises
+    ------
+    DataRangeError
+        With leg, temperature, limit and the key that would allow it.
+    """
+    broken = [c for c in checks if "data point" in c.name and not c.passed]
+    if not broken:
+        return
+    worst = min(broken, key=lambda c: c.margin)
+    leg = pair[0] if "n leg" in worst.name else pair[1]
+    first, last = leg.range
+    side, edge = ("above", last) if worst.sense == "most" else ("below", first)
+    need = hold - worst.margin
+    raise DataRangeError(
+        f"{worst.state}: junction at {worst.value:.1f} K is {abs(worst.value - edge):.1f} K {side} {edge:.1f} K, the "
+        f"{'last' if side == 'above' else 'first'} measured point of {leg.name}; choose a material whose data cover it, "
+        f"or allow the end values to be held: materials.hold_outside_data = \"{np.ceil(need):.0f} K\" (now {hold:g} K)"
+    )
+
+
+def state_of(design: Design, ask: Ask, modules: Modules, point: OperatingPoint, k: int) -> State:
+    """Return design ``k`` of a solved batch as totals of the whole generator."""
+    g, m = design.module, modules.take([k])
+    ratio = g.modules_in_series / g.modules_in_parallel
+    current = float(point.current[k]) * g.modules_in_parallel
+    voltage = float(point.voltage[k]) * g.modules_in_series
+    module_current = float(point.current[k])
+    contacts = 2 * float(m.contacts[0]) * ratio
+    leads = float(np.asarray(m.lead_resistance)[0])
+    return State(
+        name=ask.name,
+        conditions=f"{ask.load.words()}; source {ask.source.words()}; sink {ask.sink.words()}; steady",
+        power_W=voltage * current,
+        voltage_V=voltage,
+        current_A=current,
+        load_resistance_ohm=_load_resistance(ask.load, voltage, current),
+        open_circuit_voltage_V=float(point.open_voltage[k]) * g.modules_in_series,
+        internal_resistance_ohm=float(point.internal_resistance[k]) * ratio,
+        efficiency=float(point.efficiency[k]),
+        heat_in_W=float(point.heat_in[k]) * g.modules,
+        heat_out_W=float(point.heat_out[k]) * g.modules,
+        bypass_heat_W=float(point.bypass[k]) * g.modules,
+        lead_loss_W=module_current**2 * leads * g.modules,
+        T_hot_junction_K=float(point.hot_junction[k]),
+        T_cold_junction_K=float(point.cold_junction[k]),
+        T_hot_face_K=float(point.hot_face[k]),
+        T_cold_face_K=float(point.cold_face[k]),
+        heat_flux_hot_W_per_m2=float(point.heat_in[k]) / (g.width * g.depth),
+        current_density_n_A_per_m2=module_current / g.leg_side_n**2,
+        current_density_p_A_per_m2=module_current / g.leg_side_p**2,
+        leg_resistance_n_ohm=float(point.leg_resistance_n[k]) * ratio,
+        leg_resistance_p_ohm=float(point.leg_resistance_p[k]) * ratio,
+        contact_resistance_ohm=contacts,
+        electrode_resistance_ohm=float(point.electrode_resistance[k]) * ratio,
+        lead_resistance_ohm=leads * ratio,
+        heat_balance_residual_W=float(point.balance_residual[k]) * g.modules,
+        ladder=tuple(_ladder(ask, m, point, k, g.modules)),
+    )
+
+
+def _load_resistance(load: AnyLoad, voltage: float, current: float) -> float | None:
+    if isinstance(load, Resistance):
+        return load.resistance
+    return voltage / current if current > 0 else None
+
+
+def _ladder(ask: Ask, m: Modules, point: OperatingPoint, k: int, count: int) -> Iterator[Rung]:
+    """Yield places from the source to the sink with the fall of temperature before each."""
+    places: list[tuple[str, float]] = []
+    heat_in, heat_out = float(point.heat_in[k]), float(point.heat_out[k])
+    face = np.array([point.hot_face[k]])
+    for place, t in ask.source.stations(face, np.array([heat_in * count])):
+        places.append((place if place.endswith("source") else f"source {place}", float(t[0])))
+    t = float(point.hot_face[k])
+    places.append(("hot face", t))
+    parts = m.thermal_parts("hot")
+    for name, resistance in parts.items():
+        t -= heat_in * float(resistance[0])
+        places.append(("hot junction" if name == "joint" else f"behind hot {name}", t))
+    t = float(point.cold_junction[k])
+    places.append(("cold junction", t))
+    for name, resistance in reversed(m.thermal_parts("cold").items()):
+        t -= heat_out * float(resistance[0])
+        places.append(("cold face" if name == "interface" else f"behind cold {name}", t))
+    for place, value in reversed(ask.sink.stations(np.array([point.cold_face[k]]), np.array([-heat_out * count]))):
+        places.append((f"sink {place}", float(value[0])))
+    previous = places[0][1]
+    for place, t in places:
+        yield Rung(place, t, previous - t)
+        previous = t
+
+
+def _data(states: Sequence[State], pair: tuple[Material, Material]) -> Iterator[DataUse]:
+    for state in states:
+        for leg, m in zip("np", pair, strict=True):
+            below, above = m.outside(state.T_cold_junction_K, state.T_hot_junction_K)
+            yield DataUse(leg, m.name, state.name, *m.range, float(below), float(above))
+
+
+def _losses(
+    states: Sequence[State], modules: Modules, point: OperatingPoint, without: Sequence[str], base: int, count: int
+) -> Iterator[Loss]:
+    rated = states[0]
+    internal = rated.internal_resistance_ohm
+    of_resistance = {
+        "contacts": rated.contact_resistance_ohm / internal,
+        "electrodes": rated.electrode_resistance_ohm / internal,
+        "leads": rated.lead_resistance_ohm / internal,
+    }
+    of_heat = {"bypass": rated.bypass_heat_W / rated.heat_in_W if rated.heat_in_W else None}
+    for k, name in enumerate(without):
+        if not point.converged[base + k]:
+            continue
+        power = float(point.power[base + k]) * count
+        yield Loss(name, of_resistance.get(name), of_heat.get(name), power, power - rated.power_W)
+    most = next(s.power_W for s in states if s.name == "most power")
+    yield Loss("load not matched", None, None, most, most - rated.power_W)
+
+
+def _mean_couple(pair: tuple[Material, Material], modules: Modules, mean: float) -> Couple:
+    """Return one couple of constant properties at the mean junction temperature, joints and metal left out."""
+    n, p = pair
+    length = float(np.asarray(modules.leg_length)[0])
+    an, ap = float(modules.area_n[0]), float(modules.area_p[0])
+    return Couple(
+        np.asarray(p.seebeck_coefficient(mean) - n.seebeck_coefficient(mean)),
+        np.asarray(n.resistivity(mean) * length / an + p.resistivity(mean) * length / ap),
+        np.asarray((n.thermal_conductivity(mean) * an + p.thermal_conductivity(mean) * ap) / length),
+    )
+
+
+def _sanity(modules: Modules, pair: tuple[Material, Material], rated: State, design: Design) -> Sanity:
+    g, first = design.module, modules.take([0])
+    hot, cold = rated.T_hot_junction_K, rated.T_cold_junction_K
+    ideal = _mean_couple(pair, first, (hot + cold) / 2)
+    parasitic = rated.internal_resistance_ohm - rated.leg_resistance_n_ohm - rated.leg_resistance_p_ohm
+    ratio = g.modules_in_series / g.modules_in_parallel
+    couples = g.couples
+    whole = Couple(
+        ideal.seebeck * couples,
+        ideal.resistance * couples + parasitic / ratio,
+        ideal.conductance * couples + rated.bypass_heat_W / g.modules / max(hot - cold, 1e-9),
+    )
+    load = rated.load_resistance_ohm
+    if load is None:
+        power = heat = 0.0
+    else:
+        _, p, q = whole.at_load(hot, cold, load / ratio / whole.resistance)
+        power, heat = float(p) * g.modules, float(q) * g.modules
+    efficiency = power / heat if heat else 0.0
+    return Sanity(
+        power_W=power,
+        efficiency=efficiency,
+        open_circuit_voltage_V=float(whole.seebeck) * (hot - cold) * g.modules_in_series,
+        device_figure_of_merit=float(whole.figure_of_merit) * (hot + cold) / 2,
+        carnot_efficiency=1 - cold / hot,
+        power_deviation=power / rated.power_W - 1 if rated.power_W else 0.0,
+        efficiency_deviation=efficiency / rated.efficiency - 1 if rated.efficiency else 0.0,
+    )
+
+
+def _ceiling(design: Design, modules: Modules, pair: tuple[Material, Material], rated: State) -> Ceiling:
+    """Return the power that exchangers and plates allow whatever the legs, from the mean Z of the pair."""
+    g, first = design.module, modules.take([0])
+    footprint, count = np.array([g.width * g.depth]), np.array([float(g.modules)])
+    source, sink = design.source.law(footprint, count), design.sink.law(footprint, count)
+    mean = (rated.T_hot_junction_K + rated.T_cold_junction_K) / 2
+    n, p = pair
+    z = float(
+        (p.seebeck_coefficient(mean) - n.seebeck_coefficient(mean)) ** 2
+        / (
+            np.sqrt(n.resistivity(mean) * n.thermal_conductivity(mean))
+            + np.sqrt(p.resistivity(mean) * p.thermal_conductivity(mean))
+        )
+        ** 2
+    )
+    external = float((source.resistance + sink.resistance + first.resistance_hot + first.resistance_cold)[0])
+    difference = float((source.open_temperature - sink.open_temperature)[0])
+    if external == 0:
+        return Ceiling(None, None, "surfaces are held at the junctions, so nothing outside the legs limits the power")
+    if not np.isfinite(external):
+        hot, cold = rated.T_hot_junction_K, rated.T_cold_junction_K
+        power = float(best_efficiency(z, hot, cold)) * rated.heat_in_W
+        words = f"fixed heat of {rated.heat_in_W:.4g} W times the best efficiency of ideal legs at these junctions"
+    else:
+        power = float(power_ceiling(z, difference, mean, external)) * g.modules
+        words = (
+            f"films, interfaces and plates of {external:.4g} K/W per module and {difference:.1f} K in all let the best "
+            "legs of this pair give so much, whatever their size (constant properties, no joints, no bypass)"
+        )
+    return Ceiling(power, rated.power_W / power, words)
+
+
+def _masses(design: Design, pair: tuple[Material, Material]) -> Iterator[Mass]:
+    g = design.module
+    for leg, m, side in zip("np", pair, (g.leg_side_n, g.leg_side_p), strict=True):
+        legs = g.couples * g.modules
+        volume = legs * side**2 * g.leg_length
+        yield Mass(leg, m.name, legs, volume, volume * m.density.value, m.density.basis)

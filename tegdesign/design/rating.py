@@ -1,0 +1,257 @@
+"""Results as values: everything named with its unit, ready for print, JSON and pandas."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import asdict, dataclass
+from typing import TYPE_CHECKING, Any
+
+from tegdesign.design.design import Design
+from tegdesign.material.material import Material
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+
+@dataclass(frozen=True)
+class Rung:
+    """One place on the way of the heat and its temperature; ``drop_K`` is the fall from the place before."""
+
+    place: str
+    T_K: float
+    drop_K: float
+
+
+@dataclass(frozen=True)
+class State:
+    """The whole generator in one state. Voltage, current, power and heat are totals of all modules."""
+
+    name: str
+    conditions: str
+    power_W: float
+    voltage_V: float
+    current_A: float
+    load_resistance_ohm: float | None
+    open_circuit_voltage_V: float
+    internal_resistance_ohm: float
+    efficiency: float
+    heat_in_W: float
+    heat_out_W: float
+    bypass_heat_W: float
+    lead_loss_W: float
+    T_hot_junction_K: float
+    T_cold_junction_K: float
+    T_hot_face_K: float
+    T_cold_face_K: float
+    heat_flux_hot_W_per_m2: float
+    current_density_n_A_per_m2: float
+    current_density_p_A_per_m2: float
+    leg_resistance_n_ohm: float
+    leg_resistance_p_ohm: float
+    contact_resistance_ohm: float
+    electrode_resistance_ohm: float
+    lead_resistance_ohm: float
+    heat_balance_residual_W: float
+    ladder: tuple[Rung, ...]
+
+    @property
+    def load_ratio(self) -> float | None:
+        """Load resistance over internal resistance."""
+        return None if self.load_resistance_ohm is None else self.load_resistance_ohm / self.internal_resistance_ohm
+
+    @property
+    def junction_difference_K(self) -> float:
+        """Temperature difference between the junctions."""
+        return self.T_hot_junction_K - self.T_cold_junction_K
+
+
+@dataclass(frozen=True)
+class Check:
+    """One limit or requirement in one state; ``margin`` is the room left in ``unit``, negative where it is missed."""
+
+    name: str
+    state: str
+    value: float
+    limit: float
+    unit: str
+    sense: str
+    passed: bool
+
+    @property
+    def margin(self) -> float:
+        """Room left; negative where the limit is broken."""
+        return self.limit - self.value if self.sense == "most" else self.value - self.limit
+
+
+@dataclass(frozen=True)
+class DataUse:
+    """How a leg's temperatures lie against the data of its material: kelvins with the end values held."""
+
+    leg: str
+    material: str
+    state: str
+    T_first_K: float
+    T_last_K: float
+    below_K: float
+    above_K: float
+
+
+@dataclass(frozen=True)
+class Loss:
+    """What one loss takes: share of the internal resistance or of the heat, and the power without it."""
+
+    name: str
+    share_of_internal_resistance: float | None
+    share_of_heat: float | None
+    power_without_it_W: float
+    power_lost_W: float
+
+
+@dataclass(frozen=True)
+class Ceiling:
+    """What exchangers, interfaces and plates let any legs of this pair give; None where nothing external limits."""
+
+    power_W: float | None
+    share_reached: float | None
+    words: str
+
+
+@dataclass(frozen=True)
+class Sanity:
+    """Closed forms of constant properties at the mean junction temperature, beside the exact answer."""
+
+    power_W: float
+    efficiency: float
+    open_circuit_voltage_V: float
+    device_figure_of_merit: float
+    carnot_efficiency: float
+    power_deviation: float
+    efficiency_deviation: float
+
+
+@dataclass(frozen=True)
+class Caution:
+    """A warning with identity, trigger and source; text, PDF and JSON read the same list."""
+
+    id: str
+    title: str
+    value: str
+    limit: str
+    text: str
+    source: str
+
+
+@dataclass(frozen=True)
+class Mass:
+    """Leg material of all modules."""
+
+    leg: str
+    material: str
+    legs: int
+    volume_m3: float
+    mass_kg: float
+    density_basis: str
+
+
+@dataclass(frozen=True)
+class Rating:
+    """A design in its states, with everything an engineer needs to judge it."""
+
+    design: Design
+    materials: tuple[Material, Material]
+    states: tuple[State, ...]
+    checks: tuple[Check, ...]
+    data: tuple[DataUse, ...]
+    losses: tuple[Loss, ...]
+    ceiling: Ceiling
+    sanity: Sanity
+    masses: tuple[Mass, ...]
+    cautions: tuple[Caution, ...]
+    notes: tuple[str, ...]
+
+    def state(self, name: str) -> State:
+        """Return a state by its name: ``rated``, ``most power``, ``best efficiency``, ``open circuit`` ..."""
+        return next(s for s in self.states if s.name == name)
+
+    def __contains__(self, name: object) -> bool:
+        """Tell whether a state of this name was found."""
+        return any(s.name == name for s in self.states)
+
+    @property
+    def rated(self) -> State:
+        """The state at the load of the design."""
+        return self.states[0]
+
+    @property
+    def failed(self) -> tuple[Check, ...]:
+        """Checks that are not passed."""
+        return tuple(c for c in self.checks if not c.passed)
+
+    @property
+    def met(self) -> bool:
+        """Whether every limit and requirement holds."""
+        return not self.failed
+
+    @property
+    def held(self) -> tuple[DataUse, ...]:
+        """Uses of data outside their range."""
+        return tuple(d for d in self.data if d.below_K > 0 or d.above_K > 0)
+
+    @property
+    def assumptions(self) -> tuple[str, ...]:
+        """Keys of the design whose values came from defaults."""
+        return tuple(self.design.assumed)
+
+    def to_frame(self) -> pd.DataFrame:
+        """Return the states as a table, one row each, column names with units."""
+        import pandas as pd
+
+        rows = [{k: v for k, v in asdict(s).items() if k != "ladder"} for s in self.states]
+        return pd.DataFrame(rows).set_index("name")
+
+    def ladder_frame(self) -> pd.DataFrame:
+        """Return the ladders of temperatures of all states as one table."""
+        import pandas as pd
+
+        return pd.DataFrame([{"state": s.name, **asdict(rung)} for s in self.states for rung in s.ladder])
+
+    def to_dict(self) -> dict[str, Any]:
+        """Return everything as plain values for JSON; keys end in their unit."""
+        g = self.design.module
+        return {
+            "met": self.met,
+            "title": self.design.title,
+            "revision": self.design.revision,
+            "design": self.design.model_dump(exclude_none=True),
+            "geometry": {
+                "couples_per_module": g.couples,
+                "modules": g.modules,
+                "width_m": g.width,
+                "depth_m": g.depth,
+                "leg_length_m": g.leg_length,
+                "leg_side_n_m": g.leg_side_n,
+                "leg_side_p_m": g.leg_side_p,
+                "pitch_m": g.pitch,
+                "gap_m": g.gap,
+                "fill_factor": g.fill_factor,
+            },
+            "states": [asdict(s) for s in self.states],
+            "checks": [{**asdict(c), "margin": c.margin} for c in self.checks],
+            "data_range": [asdict(d) for d in self.data],
+            "losses": [asdict(item) for item in self.losses],
+            "ceiling": asdict(self.ceiling),
+            "sanity": asdict(self.sanity),
+            "leg_material": [asdict(m) for m in self.masses],
+            "materials": [dict(_material(m)) for m in self.materials],
+            "cautions": [asdict(c) for c in self.cautions],
+            "assumptions": list(self.assumptions),
+            "notes": list(self.notes),
+        }
+
+
+def _material(m: Material) -> Iterator[tuple[str, Any]]:
+    first, last = m.range
+    yield from (("name", m.name), ("composition", m.composition), ("polarity", m.polarity))
+    yield from (("T_first_K", first), ("T_last_K", last), ("service_limit_K", m.service_limit.value))
+    yield from (("service_limit_basis", m.service_limit.basis), ("source", m.source), ("doi", m.doi))
+    yield from (("compilation", m.compilation), ("hazards", m.hazards), ("hazard_tags", list(m.hazard_tags)))

@@ -1,0 +1,206 @@
+"""Search for the best geometry of many problems at once: a coarse scan, then shrinking steps round the best.
+
+A problem is a pair of materials with a number of modules in series and parallel; its unknowns are leg length, area
+ratio, leg side and number of couples. Everything of one round is one batch, so that comparing two hundred pairs costs
+a few large calls, and sizing one pair a few small ones.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from tegdesign.design.brief import Brief
+from tegdesign.design.evaluate import Candidates, Evaluation, Job, evaluate
+from tegdesign.leg.closed_form import area_ratio_of_best_efficiency
+from tegdesign.material.curve import Array
+
+_RATIO_SPAN = np.log(4.0)  # the area ratio is sought within a factor four of its closed form
+_STEPS = (0.2, 0.2, 0.1, 0.1, 0.05, 0.05, 0.025, 0.025, 0.0125)  # of the unit box, one batch each
+
+
+@dataclass(frozen=True)
+class Problems:
+    """Material indices and connection of each problem, arrays (P,)."""
+
+    n: NDArray[np.intp]
+    p: NDArray[np.intp]
+    series: Array
+    parallel: Array
+
+    def take(self, which: NDArray[np.intp]) -> Problems:
+        """Return the problems ``which``, repeated where asked."""
+        return Problems(self.n[which], self.p[which], self.series[which], self.parallel[which])
+
+
+class Space:
+    """Unit box of the unknowns of each problem: ln leg length, ln area ratio, leg side, ln couples."""
+
+    def __init__(self, brief: Brief, job: Job, problems: Problems) -> None:
+        limits = brief.limits
+        self.job, self.problems = job, problems
+        self.limits = limits
+        self.width, self.depth = (side - 2 * limits.edge_margin for side in limits.footprint)
+        self.footprint = limits.footprint[0] * limits.footprint[1]
+        mean = _mean_temperature(job)
+        properties = np.array(
+            [
+                (m.resistivity(t), m.thermal_conductivity(t))
+                for m in job.materials
+                for t in [np.clip(mean, *m.range)]
+            ],
+            dtype=float,
+        )
+        (rn, kn), (rp, kp) = properties[problems.n].T, properties[problems.p].T
+        self.ratio = area_ratio_of_best_efficiency(rn, rp, kn, kp)
+        most = self.width * self.depth / (2 * (limits.leg_side[0] + limits.gap) ** 2)
+        self.most_couples = max(min(float(limits.couples[1]), most), 1.0)
+        self.least_couples = min(float(max(limits.couples[0], 1)), self.most_couples)
+
+    def candidates(self, which: NDArray[np.intp], u: Array, couples: Array | None = None) -> Candidates:
+        """Return geometries at positions u (B, 4) of the boxes of problems ``which`` (B,)."""
+        low, high = np.log(self.limits.leg_length)
+        length = np.exp(low + u[:, 0] * (high - low))
+        root = np.sqrt(self.ratio[which] * np.exp((2 * u[:, 1] - 1) * _RATIO_SPAN))
+        if couples is None:
+            span = np.log(self.most_couples / self.least_couples)
+            couples = self.least_couples * np.exp(u[:, 3] * span)
+        pitch = np.sqrt(self.width * self.depth / (2 * couples))
+        # mean side between the thinnest and the thickest legs that can be cut and fit, the smaller leg decides below
+        smallest = self.limits.leg_side[0] * (1 + root) / (2 * np.minimum(root, 1.0))
+        largest = np.minimum(pitch - self.limits.gap, self.limits.leg_side[1] * (1 + root) / (2 * np.maximum(root, 1.0)))
+        largest = np.minimum(largest, (pitch - self.limits.gap / 2) * (1 + root) / (2 * np.maximum(root, 1.0)))
+        smallest = np.minimum(smallest, largest)
+        side = np.exp(np.log(smallest) + u[:, 2] * np.log(largest / smallest))
+        side_p = 2 * side / (1 + root)
+        part = self.problems.take(which)
+        footprint = np.full(which.size, self.footprint)
+        return Candidates(
+            part.n, part.p, length, root * side_p, side_p, pitch, couples, footprint, part.series, part.parallel
+        )
+
+    def couples_of(self, u: Array) -> Array:
+        """Return the number of couples at positions u."""
+        return np.asarray(self.least_couples * (self.most_couples / self.least_couples) ** u[:, 3])
+
+    def position_of_couples(self, couples: Array) -> Array:
+        """Return the position in the box of a number of couples."""
+        span = np.log(self.most_couples / self.least_couples)
+        return np.clip(np.log(couples / self.least_couples) / span, 0.0, 1.0) if span > 0 else np.zeros(couples.size)
+
+
+def buildable(brief: Brief, e: Evaluation) -> Array:
+    """Return by how much limits of the workshop are broken (0 when none): thin or slender legs, crowded pitch."""
+    c, limits = e.candidates, brief.limits
+    thin = np.minimum(c.side_n, c.side_p)
+    over = np.maximum(
+        limits.leg_side[0] / thin - 1, c.leg_length / thin / limits.slenderness - 1
+    )
+    return np.maximum(over, 0.0)
+
+
+def score(brief: Brief, e: Evaluation) -> Array:
+    """Return the score of the candidates, workshop limits included."""
+    broken = buildable(brief, e)
+    return np.where(broken > 1e-9, np.minimum(e.score, 0.0) - 1e4 * (1 + broken), e.score)
+
+
+def search(
+    brief: Brief, job: Job, problems: Problems, keep: Callable[[Array], NDArray[np.intp]], progress: Callable[[float], None]
+) -> tuple[Problems, Space, Array, Array]:
+    """Return the problems kept after the scan, their space, best positions (P, 4) and scores (P,).
+
+    ``keep`` picks the problems that go on from the scores after the scan.
+    """
+    space = Space(brief, job, problems)
+    count = problems.n.size
+    grid = np.array(
+        [
+            (length, 0.5, side, couples)
+            for length in (0.05, 0.22, 0.39, 0.56, 0.73, 0.9)
+            for side in (0.35, 0.85)
+            for couples in (0.45, 0.8)
+        ]
+    )
+    best = _Incumbent(count)
+    _round(brief, space, best, np.tile(grid, (count, 1)), np.repeat(np.arange(count), len(grid)))
+    chosen = keep(best.score)
+    problems = problems.take(chosen)
+    space = Space(brief, job, problems)
+    best = best.take(chosen)
+    count = problems.n.size
+    rng = np.random.default_rng(20260101)  # fixed: same brief, same answer
+    jump = best.u.copy()
+    for number, step in enumerate(_STEPS):
+        axis = np.concatenate([np.eye(4), -np.eye(4)]) * step
+        cloud = rng.uniform(-step, step, (7, 4))
+        offsets = np.concatenate([axis, cloud])
+        around = np.concatenate([best.u[:, None, :] + offsets, jump[:, None, :]], axis=1)
+        u = np.clip(around, 0.0, 1.0).reshape(-1, 4)
+        which = np.repeat(np.arange(count), around.shape[1])
+        before, centre = best.score.copy(), best.u.copy()
+        values = _round(brief, space, best, u, which).reshape(count, -1)
+        jump = _parabola(centre, before, values[:, :8], step)
+        progress((number + 1) / len(_STEPS))
+    return problems, space, best.u, best.score
+
+
+class _Incumbent:
+    """Best position so far of each problem and its voltage."""
+
+    def __init__(self, count: int) -> None:
+        self.u = np.full((count, 4), 0.5)
+        self.score = np.full(count, -np.inf)
+        self.voltage_per_couple = np.full(count, np.nan)
+
+    def take(self, which: NDArray[np.intp]) -> _Incumbent:
+        other = _Incumbent(which.size)
+        for name in vars(other):
+            setattr(other, name, getattr(self, name)[which].copy())
+        return other
+
+
+def _round(brief: Brief, space: Space, best: _Incumbent, u: Array, which: NDArray[np.intp]) -> Array:
+    """Evaluate positions of several problems and keep what is better; return their scores."""
+    u = u.copy()
+    if brief.require.voltage is not None:
+        _into_window(brief, space, best, u, which)
+    candidates = space.candidates(which, u)
+    e = evaluate(space.job, candidates, tolerance=1e-6)
+    values = score(brief, e)
+    order = np.argsort(values, kind="stable")
+    top = np.full(best.score.size, -1)
+    top[which[order]] = order  # the last one written is the best of its problem
+    found = np.flatnonzero((top >= 0) & (values[top] > best.score))
+    k = top[found]
+    best.u[found], best.score[found] = u[k], values[k]
+    best.voltage_per_couple[found] = (e.rated.voltage / candidates.couples)[k]
+    return values
+
+
+def _into_window(brief: Brief, space: Space, best: _Incumbent, u: Array, which: NDArray[np.intp]) -> None:
+    """Move the number of couples so that the voltage falls into the window; it goes nearly as their number."""
+    low, high = brief.require.voltage or (0.0, np.inf)
+    per = best.voltage_per_couple[which] * space.problems.series[which]
+    known = np.isfinite(per) & (per > 0)
+    safe = np.where(known, per, 1.0)
+    wanted = np.clip(space.couples_of(u), 1.01 * low / safe, 0.99 * high / safe)
+    u[:, 3] = np.where(known, space.position_of_couples(wanted), u[:, 3])
+
+
+def _parabola(centre: Array, at_centre: Array, at_axes: Array, step: float) -> Array:
+    """Return the top of the parabolas through the axis points, at most two steps away."""
+    plus, minus = at_axes[:, :4], at_axes[:, 4:]
+    curve = plus + minus - 2 * at_centre[:, None]
+    with np.errstate(divide="ignore", invalid="ignore"):
+        shift = -0.5 * step * (plus - minus) / curve
+    shift = np.where(np.isfinite(shift) & (curve < 0), np.clip(shift, -2 * step, 2 * step), 0.0)
+    return np.clip(centre + shift, 0.0, 1.0)
+
+
+def _mean_temperature(job: Job) -> float:
+    hot, cold = job.source.reference_temperature, job.sink.reference_temperature
+    return float((max(hot, cold + 50.0) + cold) / 2)
