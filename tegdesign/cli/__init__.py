@@ -15,6 +15,9 @@ from tegdesign.errors import TegdesignError
 
 # One line a command: the module tegdesign.cli.<name> holds a function or a typer.Typer of the same name.
 COMMANDS = {
+    "size": "Size a generator for a brief: design file, report, sheet.",
+    "rate": "Rate a given design: report, operating table, curves, maps.",
+    "compare": "Rank pairs of materials for a brief.",
     "materials": "List, show and check thermoelectric materials.",
 }
 
@@ -80,7 +83,7 @@ def tegdesign_command(
 
     \b
     Example:
-      tegdesign materials --polarity n --covers "300 K..800 K"
+      tegdesign size examples/flue-gas-plate.toml -o plate.toml --sheet plate.pdf
     """
 
 

@@ -9,6 +9,8 @@ from typing import Annotated, Any, Literal
 
 import typer
 
+from tegdesign.sheet.table import table_text
+
 JsonOption = Annotated[bool, typer.Option("--json", help="Print JSON; keys carry the SI unit.")]
 CsvOption = Annotated[bool, typer.Option("--csv", help="Print CSV; columns carry the SI unit.")]
 OutputOption = Annotated[
@@ -18,6 +20,18 @@ OutputOption = Annotated[
     ),
 ]
 Style = Literal["text", "csv", "json"]
+
+__all__ = [
+    "CsvOption",
+    "JsonOption",
+    "OutputOption",
+    "csv_text",
+    "emit",
+    "json_text",
+    "note",
+    "style",
+    "table_text",
+]
 
 
 def style(json: bool, csv: bool) -> Style:
@@ -74,17 +88,3 @@ def csv_text(columns: Sequence[str], rows: Sequence[Sequence[Any]]) -> str:
         cells = [cell.item() if hasattr(cell, "item") else cell for cell in row]
         writer.writerow(["" if cell is None or cell != cell else cell for cell in cells])
     return stream.getvalue()
-
-
-def table_text(columns: Sequence[str], rows: Sequence[Sequence[str]], right: Sequence[int] = ()) -> str:
-    """Return a table lined up for reading; the columns numbered in ``right`` end at the right."""
-    widths = [max([len(name), *(len(row[k]) for row in rows)]) for k, name in enumerate(columns)]
-    lines = [columns, ["-" * width for width in widths], *rows]
-    return "\n".join("  ".join(_cells(line, widths, right)).rstrip() for line in lines)
-
-
-def _cells(line: Sequence[str], widths: Sequence[int], right: Sequence[int]) -> list[str]:
-    return [
-        cell.rjust(width) if k in right else cell.ljust(width)
-        for k, (cell, width) in enumerate(zip(line, widths, strict=True))
-    ]

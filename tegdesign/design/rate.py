@@ -361,10 +361,11 @@ def _ceiling(design: Design, modules: Modules, pair: tuple[Material, Material], 
     difference = float((source.open_temperature - sink.open_temperature)[0])
     if external == 0:
         return Ceiling(None, None, "surfaces are held at the junctions, so nothing outside the legs limits the power")
-    if not np.isfinite(external):
+    given = design.source.given_heat
+    if given is not None:
         hot, cold = rated.T_hot_junction_K, rated.T_cold_junction_K
-        power = float(best_efficiency(z, hot, cold)) * rated.heat_in_W
-        words = f"fixed heat of {rated.heat_in_W:.4g} W times the best efficiency of ideal legs at these junctions"
+        power = float(best_efficiency(z, hot, cold)) * given
+        words = f"all of the {given:.4g} W at the best efficiency of ideal legs of this pair between these junctions"
     else:
         power = float(power_ceiling(z, difference, mean, external)) * g.modules
         words = (

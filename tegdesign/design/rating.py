@@ -54,6 +54,10 @@ class State:
     heat_balance_residual_W: float
     ladder: tuple[Rung, ...]
 
+    def to_row(self) -> dict[str, Any]:
+        """Return the numbers of the state by their names with units, and the name of the state."""
+        return {k: v for k, v in asdict(self).items() if k not in ("ladder", "conditions")}
+
     @property
     def load_ratio(self) -> float | None:
         """Load resistance over internal resistance."""
@@ -206,8 +210,7 @@ class Rating:
         """Return the states as a table, one row each, column names with units."""
         import pandas as pd
 
-        rows = [{k: v for k, v in asdict(s).items() if k != "ladder"} for s in self.states]
-        return pd.DataFrame(rows).set_index("name")
+        return pd.DataFrame([s.to_row() for s in self.states]).set_index("name")
 
     def ladder_frame(self) -> pd.DataFrame:
         """Return the ladders of temperatures of all states as one table."""

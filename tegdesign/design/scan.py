@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import os
 from collections.abc import Mapping, Sequence
-from dataclasses import asdict, dataclass
+from dataclasses import dataclass
 from itertools import product
 from typing import TYPE_CHECKING, Any
 
@@ -48,11 +48,7 @@ class Sweep:
         """Return one mapping a state: the varied quantities first, then the results, names with units."""
         names = [f"{n}_{u}" if u else n for n, u in zip(self.x_name, self.x_unit, strict=True)]
         return [
-            {
-                **dict(zip(names, x, strict=True)),
-                **{k: v for k, v in asdict(s).items() if k not in ("ladder", "conditions", "name")},
-                "K_outside_data": outside,
-            }
+            {**dict(zip(names, x, strict=True)), **s.to_row(), "K_outside_data": outside}
             for x, s, outside in zip(self.x, self.states, self.K_outside_data, strict=True)
         ]
 
@@ -92,10 +88,16 @@ def operating_table(
     return _sweep([design] * len(asks), asks, ("T_source", "T_sink"), ("K", "K"), x)
 
 
-def voltage_current(design: Design | str | os.PathLike[str], points: int = 25) -> tuple[State, ...]:
+def curve(design: Design | str | os.PathLike[str], points: int = 25) -> Sweep:
     """Return states from the open circuit towards the short circuit, evenly in current; junctions follow the load.
 
-    Ends before the short circuit where a temperature maximum forms inside a leg.
+    Ends before the short circuit where a temperature maximum forms inside a leg. States outside the measured data
+    are not refused here: ``K_outside_data`` tells by how many kelvin the end values are held.
+
+    Raises
+    ------
+    ConvergenceError
+        The design has no operating point.
     """
     design = as_design(design)
     ends = [
@@ -104,17 +106,18 @@ def voltage_current(design: Design | str | os.PathLike[str], points: int = 25) -
         Ask("short circuit", design.source, design.sink, SHORT, design.losses, required=False),
     ]
     _, point = solve(design, ends)
-    parallel = design.module.modules_in_parallel
     top = point.current[2] if point.converged[2] else 1.7 * point.current[1]
-    currents = np.linspace(0.0, top * parallel, points)
+    currents = [float(i) for i in np.linspace(0.0, top, points) * design.module.modules_in_parallel]
     asks = [
-        _ask(
-            design, f"{i:.6g} A", design.source, design.sink, GivenCurrent.model_construct(current=float(i)), required=False
-        )
+        _ask(design, f"{i:.6g} A", design.source, design.sink, GivenCurrent.model_construct(current=i), False)
         for i in currents
     ]
-    modules, point = solve(design, asks)
-    return tuple(state_of(design, a, modules, point, k) for k, a in enumerate(asks) if point.converged[k])
+    return _sweep([design] * points, asks, ("current_set",), ("A",), [(i,) for i in currents], refuse=False)
+
+
+def voltage_current(design: Design | str | os.PathLike[str], points: int = 25) -> tuple[State, ...]:
+    """Return the states of ``curve``."""
+    return curve(design, points).states
 
 
 def against_hot(
@@ -212,8 +215,14 @@ def _sweep(
             f"junctions at {point.hot_junction[k]:.1f} K and {point.cold_junction[k]:.1f} K leave the measured data by "
             f"{outside[k]:.1f} K; narrow the table or set materials.hold_outside_data = \"{np.ceil(outside[k]):.0f} K\""
         )
-    states = tuple(state_of(d, a, modules, point, k) for k, (d, a) in enumerate(zip(designs, asks, strict=True)))
-    return Sweep(names, units, tuple(tuple(v) for v in x), states, tuple(float(v) for v in outside))
+    found = np.flatnonzero(point.converged)  # only states that need not exist can be missing here
+    return Sweep(
+        names,
+        units,
+        tuple(tuple(x[k]) for k in found),
+        tuple(state_of(designs[k], asks[k], modules, point, int(k)) for k in found),
+        tuple(float(outside[k]) for k in found),
+    )
 
 
 def _put(data: dict[str, Any], key: str, value: str | float) -> None:
@@ -246,4 +255,3 @@ def _unit(key: str, design: Design) -> str:
     _, field = _field(design, key)
     units = [m.unit for m in field.metadata if isinstance(m, Measure)]
     return units[0].replace("/", "_per_").replace("^", "").replace("*", "_") if units else ""
-

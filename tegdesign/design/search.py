@@ -126,7 +126,11 @@ def search(
         ]
     )
     best = _Incumbent(count)
-    _round(brief, space, best, np.tile(grid, (count, 1)), np.repeat(np.arange(count), len(grid)))
+    u, which = np.tile(grid, (count, 1)), np.repeat(np.arange(count), len(grid))
+    _, per_couple = _round(brief, space, best, u, which)
+    if brief.require.voltage is not None:  # once more, each with the couples that its own voltage asks for
+        u[:, 3] = _in_window(brief, space, u, per_couple * problems.series[which])
+        _round(brief, space, best, u, which, moved=True)
     chosen = keep(best.score)
     problems = problems.take(chosen)
     space = Space(brief, job, problems)
@@ -142,8 +146,9 @@ def search(
         u = np.clip(around, 0.0, 1.0).reshape(-1, 4)
         which = np.repeat(np.arange(count), around.shape[1])
         before, centre = best.score.copy(), best.u.copy()
-        values = _round(brief, space, best, u, which).reshape(count, -1)
+        values, per_couple = (v.reshape(count, -1) for v in _round(brief, space, best, u, which))
         jump = _parabola(centre, before, values[:, :8], step)
+        best.learn(u.reshape(count, -1, 4) - centre[:, None, :], per_couple)
         progress((number + 1) / len(_STEPS))
     return problems, space, best.u, best.score
 
@@ -155,6 +160,7 @@ class _Incumbent:
         self.u = np.full((count, 4), 0.5)
         self.score = np.full(count, -np.inf)
         self.voltage_per_couple = np.full(count, np.nan)
+        self.voltage_slope = np.zeros((count, 4))  # of its logarithm, by position
 
     def take(self, which: NDArray[np.intp]) -> _Incumbent:
         other = _Incumbent(which.size)
@@ -162,12 +168,26 @@ class _Incumbent:
             setattr(other, name, getattr(self, name)[which].copy())
         return other
 
+    def learn(self, offsets: Array, per_couple: Array) -> None:
+        """Fit how the voltage of a couple moves with the position, so that the couples can make up for it."""
+        usable = np.isfinite(per_couple) & (per_couple > 0)
+        value = np.log(np.where(usable, per_couple, 1.0))
+        x = np.concatenate([np.ones((*offsets.shape[:2], 1)), offsets], axis=2) * usable[:, :, None]
+        normal = np.einsum("pki,pkj->pij", x, x) + 1e-9 * np.eye(5)
+        self.voltage_slope = np.linalg.solve(normal, np.einsum("pki,pk->pi", x, value)[:, :, None])[:, 1:, 0]
 
-def _round(brief: Brief, space: Space, best: _Incumbent, u: Array, which: NDArray[np.intp]) -> Array:
-    """Evaluate positions of several problems and keep what is better; return their scores."""
-    u = u.copy()
-    if brief.require.voltage is not None:
-        _into_window(brief, space, best, u, which)
+
+def _round(
+    brief: Brief, space: Space, best: _Incumbent, u: Array, which: NDArray[np.intp], moved: bool = False
+) -> tuple[Array, Array]:
+    """Evaluate positions of several problems and keep what is better; return scores and voltage per couple.
+
+    With a voltage window the couples are first moved (in place) by what is known of the voltage, unless ``moved``.
+    """
+    if brief.require.voltage is not None and not moved:
+        shift = np.einsum("bi,bi->b", best.voltage_slope[which], u - best.u[which])
+        per_couple = best.voltage_per_couple[which] * np.exp(np.clip(shift, -1.0, 1.0))
+        u[:, 3] = _in_window(brief, space, u, per_couple * space.problems.series[which])
     candidates = space.candidates(which, u)
     e = evaluate(space.job, candidates, tolerance=1e-6)
     values = score(brief, e)
@@ -177,18 +197,18 @@ def _round(brief: Brief, space: Space, best: _Incumbent, u: Array, which: NDArra
     found = np.flatnonzero((top >= 0) & (values[top] > best.score))
     k = top[found]
     best.u[found], best.score[found] = u[k], values[k]
-    best.voltage_per_couple[found] = (e.rated.voltage / candidates.couples)[k]
-    return values
+    per_couple = e.rated.voltage / candidates.couples
+    best.voltage_per_couple[found] = per_couple[k]
+    return values, per_couple
 
 
-def _into_window(brief: Brief, space: Space, best: _Incumbent, u: Array, which: NDArray[np.intp]) -> None:
-    """Move the number of couples so that the voltage falls into the window; it goes nearly as their number."""
+def _in_window(brief: Brief, space: Space, u: Array, per_couple: Array) -> Array:
+    """Return the place of the number of couples that brings the voltage into the window; it goes as their number."""
     low, high = brief.require.voltage or (0.0, np.inf)
-    per = best.voltage_per_couple[which] * space.problems.series[which]
-    known = np.isfinite(per) & (per > 0)
-    safe = np.where(known, per, 1.0)
-    wanted = np.clip(space.couples_of(u), 1.01 * low / safe, 0.99 * high / safe)
-    u[:, 3] = np.where(known, space.position_of_couples(wanted), u[:, 3])
+    known = np.isfinite(per_couple) & (per_couple > 0)
+    safe = np.where(known, per_couple, 1.0)
+    wanted = np.clip(space.couples_of(u), 1.002 * low / safe, 0.998 * high / safe)
+    return np.where(known, space.position_of_couples(wanted), u[:, 3])
 
 
 def _parabola(centre: Array, at_centre: Array, at_axes: Array, step: float) -> Array:

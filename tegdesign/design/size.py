@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import os
 from collections.abc import Callable, Iterator
-from dataclasses import asdict, dataclass
+from dataclasses import asdict, dataclass, fields
 from itertools import product
 from typing import TYPE_CHECKING, Any
 
@@ -101,31 +101,31 @@ def size(brief: Brief | str | os.PathLike[str], *, progress: Callable[[float], N
     names = [_single(brief, side) for side in ("n", "p")]
     pair = [material(name, side, brief.materials.folder) for name, side in zip(names, ("n", "p"), strict=True)]
     job = job_of(brief, pair)
-    connections = list(connections(brief))
-    count = len(connections)
+    ways = list(connections(brief))
+    count = len(ways)
     problems = Problems(
         np.zeros(count, dtype=np.intp),
         np.ones(count, dtype=np.intp),
-        np.array([c[0] for c in connections], dtype=float),
-        np.array([c[1] for c in connections], dtype=float),
+        np.array([c[0] for c in ways], dtype=float),
+        np.array([c[1] for c in ways], dtype=float),
     )
 
-    def three_best(scores: Array) -> NDArray[np.intp]:
-        return np.argsort(-scores, kind="stable")[:3]
+    def six_best(scores: Array) -> NDArray[np.intp]:
+        return np.argsort(-scores, kind="stable")[:6]
 
-    problems, space, u, scores = search(brief, job, problems, three_best, progress)
+    problems, space, u, scores = search(brief, job, problems, six_best, progress)
     if not np.any(np.isfinite(scores)):
         raise ConvergenceError(
             "no candidate of this brief has an operating point; widen limits.leg_length or check source and sink"
         )
-    k = int(np.argmax(scores))
-    free = evaluate(job, space.candidates(np.array([k]), u[[k]]))
+    free = evaluate(job, space.candidates(np.arange(scores.size), u))
     built = _build(brief, job, space, free)
+    k = int(np.argmax(scores))
     design = _design(brief, names[0], names[1], built.candidates)
     rating = rate(design)
     exact = float(_objective(brief, rating))
     return Sizing(
-        brief, design, rating, tuple(_binding(brief, design, rating)), float(free.objective[0]), exact
+        brief, design, rating, tuple(_binding(brief, design, rating)), float(free.objective[k]), exact
     )
 
 
@@ -164,11 +164,16 @@ def connections(brief: Brief) -> Iterator[tuple[int, int]]:
 
 def _build(brief: Brief, job: Job, space: Space, free: Evaluation) -> Evaluation:
     """Round to workshop steps and an even grid, then try the neighbours once more; all in two batches."""
-    first = evaluate(job, _rounded(brief, space, free.candidates))
+    count = free.candidates.n.size
+    first = evaluate(job, _join([_rounded(brief, space, free.candidates.take(np.array([k]))) for k in range(count)]))
     best = first.candidates.take(np.array([int(np.argmax(score(brief, first)))]))
     second = evaluate(job, _neighbours(brief, space, best))
     k = np.array([int(np.argmax(score(brief, second)))])
     return evaluate(job, second.candidates.take(k))
+
+
+def _join(parts: list[Candidates]) -> Candidates:
+    return Candidates(**{f.name: np.concatenate([getattr(p, f.name) for p in parts]) for f in fields(Candidates)})
 
 
 def _rounded(brief: Brief, space: Space, free: Candidates) -> Candidates:
@@ -321,7 +326,7 @@ def _binding(brief: Brief, design: Design, rating: Rating) -> Iterator[Binding]:
     for name, value, (low, high), step in spans:
         for bound, word in ((low, "least"), (high, "most")):
             if np.isfinite(bound) and bound > 0 and abs(value - bound) < 1.01 * step:
-                yield Binding(name, write(value, "m", "mm"), f"{word} {write(bound, 'm', 'mm')}")
+                yield Binding(name, f"{value * 1e3:.6g} mm", f"{word} {bound * 1e3:.6g} mm")
     slender = g.leg_length / thin
     if slender > 0.95 * limits.slenderness:
         yield Binding("slenderness of the legs", f"{slender:.3g}", f"most {limits.slenderness:g}")

@@ -2,24 +2,20 @@
 
 from __future__ import annotations
 
-import io
 import os
 from functools import reduce
-from pathlib import Path
 from typing import TYPE_CHECKING
 
 import numpy as np
 
-from tegdesign.document import write_whole
-from tegdesign.errors import InputError
 from tegdesign.material.curve import Array, Curve
 from tegdesign.material.material import Material
+from tegdesign.sheet.drawing import check_ending, save_drawing
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
     from matplotlib.figure import Figure
 
-FORMATS = (".png", ".pdf", ".svg")
 PANELS = (
     ("seebeck_coefficient", "Seebeck coefficient S [uV/K]", 1e6),
     ("resistivity", "resistivity [mohm cm]", 1e5),
@@ -92,13 +88,5 @@ def save_figure(material: Material, path: str | os.PathLike[str]) -> None:
     InputError
         Another ending than .png, .pdf or .svg, or a place that cannot be written to.
     """
-    ending = Path(path).suffix.lower()
-    if ending not in FORMATS:
-        raise InputError(f"{path}: a figure ends in {', '.join(FORMATS)}")
-    import matplotlib as mpl
-
-    stream = io.BytesIO()
-    date = {".png": {}, ".pdf": {"CreationDate": None}, ".svg": {"Date": None}}[ending]
-    with mpl.rc_context({"svg.hashsalt": material.name}):
-        figure(material).savefig(stream, format=ending[1:], dpi=150, metadata=date)
-    write_whole(path, stream.getvalue())
+    check_ending(path)
+    save_drawing(figure(material), path, material.name)

@@ -31,6 +31,11 @@ class Boundary(Part):
     def reference_temperature(self) -> float:
         """Temperature that names the state [K]: of the surface, the fluid, the inlet or the ambient."""
 
+    @property
+    def given_heat(self) -> float | None:
+        """Heat that is all there is [W], None where the heat follows from temperatures."""
+        return None
+
     @abstractmethod
     def at(self, temperature: float) -> Boundary:
         """Return the same boundary with another reference temperature [K]."""

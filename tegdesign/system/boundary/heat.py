@@ -30,6 +30,11 @@ class FixedHeat(Boundary):
         """Temperature of the ambient [K]."""
         return self.ambient_temperature
 
+    @property
+    def given_heat(self) -> float:
+        """The heat of the source [W]."""
+        return self.heat
+
     def at(self, temperature: float) -> FixedHeat:
         """Return the source in another ambient temperature [K]."""
         return self.model_copy(update={"ambient_temperature": temperature})

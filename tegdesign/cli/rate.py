@@ -1,0 +1,165 @@
+"""``tegdesign rate``: what a given design does, in its own state, in a table of states, as curve or as map."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Annotated
+
+import typer
+
+from tegdesign.cli import output
+from tegdesign.errors import InputError
+
+if TYPE_CHECKING:
+    from tegdesign.design.scan import Sweep
+    from tegdesign.system.load import AnyLoad
+
+
+def rate(
+    design: Annotated[Path, typer.Argument(metavar="DESIGN.toml", help="The design.", show_default=False)],
+    hot: Annotated[
+        str | None, typer.Option(metavar="LIST", help='Source temperatures, "200 degC, 250 degC".')
+    ] = None,
+    cold: Annotated[str | None, typer.Option(metavar="LIST", help="Sink temperatures.")] = None,
+    load: Annotated[
+        str | None, typer.Option(metavar="LIST", help='Loads: "matched", "efficiency" or resistances, "2 ohm, 4 ohm".')
+    ] = None,
+    current: Annotated[str | None, typer.Option(metavar="LIST", help='Currents, "0 A, 1 A".')] = None,
+    curve: Annotated[bool, typer.Option("--curve", help="V-I and P-I from open towards short circuit.")] = False,
+    over: Annotated[
+        list[str] | None,
+        typer.Option(
+            "--map", metavar="KEY=LIST", help='Vary one or two keys of the design, "module.leg_length=1 mm, 2 mm".'
+        ),
+    ] = None,
+    of: Annotated[str, typer.Option(metavar="QUANTITY", help="Quantity shown in a map.")] = "power_W",
+    figure: Annotated[
+        Path | None, typer.Option(metavar="FILE", help="Draw the curve or map: .png, .pdf or .svg.")
+    ] = None,
+    json: output.JsonOption = False,
+    csv: output.CsvOption = False,
+    to: output.OutputOption = None,
+) -> None:
+    """Rate a design: its report, or a table of states when temperatures, loads, a curve or a map are asked for.
+
+    Exit code 1: a limit or requirement of the design is missed.
+
+    \b
+    Examples:
+      tegdesign rate examples/wall-module.design.toml
+      tegdesign rate examples/wall-module.design.toml --hot "150 degC, 200 degC" --load "matched, 3 ohm"
+      tegdesign rate examples/wall-module.design.toml --curve --csv -o curve.csv
+      tegdesign rate examples/wall-module.design.toml --map "module.leg_length=1 mm, 2 mm, 3 mm" --of efficiency
+    """
+    form = output.style(json, csv)
+    table = bool(hot or cold or load or current)
+    if table + curve + bool(over) > 1:
+        raise typer.BadParameter("give temperatures and loads, or --curve, or --map; one at a time")
+    if figure is not None and not (curve or over):
+        raise typer.BadParameter("--figure goes with --curve or --map")
+    if not (table or curve or over):
+        _report(design, form, to)
+        return
+    from tegdesign.design.design import read_design
+    from tegdesign.design.scan import curve as curve_of
+    from tegdesign.design.scan import map_over, operating_table
+
+    made = read_design(design)
+    if curve:
+        sweep = curve_of(made)
+        picture = "curve"
+    elif over:
+        sweep = map_over(made, dict(_axis(text) for text in over))
+        sweep.column(of)
+        picture = "map"
+    else:
+        sweep = operating_table(made, hot=_temperatures(hot), cold=_temperatures(cold), loads=_loads(load, current))
+        picture = ""
+    if figure is not None:
+        from tegdesign.sheet.sweep import draw_curve, draw_map
+
+        (draw_curve(sweep, made, figure) if picture == "curve" else draw_map(sweep, made, of, figure))
+    output.emit(_text(sweep, form, of if picture == "map" else ""), to)
+
+
+def _report(design: Path, form: output.Style, to: Path | None) -> None:
+    from tegdesign.design.rate import rate as rate_design
+    from tegdesign.sheet.text import rating_report
+
+    rating = rate_design(design)
+    if form == "json":
+        output.emit(output.json_text(rating.to_dict()), to)
+    elif form == "csv":
+        rows = [s.to_row() for s in rating.states]
+        output.emit(output.csv_text(list(rows[0]), [list(r.values()) for r in rows]), to)
+    else:
+        output.emit(rating_report(rating), to)
+    if not rating.met:
+        raise typer.Exit(1)
+
+
+def _text(sweep: Sweep, form: output.Style, of: str) -> str:
+    rows = sweep.rows()
+    if form == "json":
+        return output.json_text({"states": rows})
+    if form == "csv":
+        return output.csv_text(list(rows[0]), [list(r.values()) for r in rows])
+    from tegdesign.sheet.sweep import sweep_table
+
+    return sweep_table(sweep, of)
+
+
+def _list(text: str | None) -> list[str]:
+    parts = [part.strip() for part in text.split(",")] if text else []
+    if any(not part for part in parts):
+        raise InputError(f"list '{text}' has an empty place; write values with units, separated by commas")
+    return parts
+
+
+def _temperatures(text: str | None) -> list[float]:
+    from tegdesign.quantity import parse
+
+    values = [parse(part, "K") for part in _list(text)]
+    for part, value in zip(_list(text), values, strict=True):
+        if not 0 < value < 4000:
+            raise InputError(f"temperature '{part}' is {value:g} K, outside 0 K..4000 K; mend it")
+    return values
+
+
+def _loads(load: str | None, current: str | None) -> list[AnyLoad]:
+    from tegdesign.quantity import SI, parse
+    from tegdesign.system.load import BestEfficiency, GivenCurrent, Matched, Resistance
+
+    found: list[AnyLoad] = []
+    for part in _list(load):
+        if part == "matched":
+            found.append(Matched())
+        elif part == "efficiency":
+            found.append(BestEfficiency())
+        else:
+            value = parse(part, "ohm")
+            if value <= 0:
+                raise InputError(f"load '{part}' must be above 0 ohm")
+            found.append(Resistance(resistance=SI(value)))
+    for part in _list(current):
+        value = parse(part, "A")
+        if value < 0:
+            raise InputError(f"current '{part}' must be 0 A or more")
+        found.append(GivenCurrent(current=SI(value)))
+    return found
+
+
+def _axis(text: str) -> tuple[str, list[str | float]]:
+    key, mark, values = text.partition("=")
+    if not mark or not values.strip():
+        raise InputError(f"map '{text}' is not KEY=LIST, like \"module.leg_length=1 mm, 2 mm\"")
+    return key.strip(), [_number(part) for part in _list(values)]
+
+
+def _number(text: str) -> str | float:
+    """Return a bare number as one, so that counts and fractions can be varied."""
+    try:
+        value = float(text)
+    except ValueError:
+        return text
+    return int(value) if value.is_integer() else value
