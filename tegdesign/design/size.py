@@ -192,8 +192,11 @@ def _rounded(brief: Brief, space: Space, free: Candidates) -> Candidates:
     for _, columns, rows, most in sorted(grids)[:12]:
         scale = min(1.0, (most - limits.gap) / (pitch - limits.gap)) if pitch > limits.gap else 1.0
         sides = [_both(float(s[0]) * scale, workshop.leg_side_step) for s in (free.side_n, free.side_p)]
-        for length, sn, sp in product(_both(float(free.leg_length[0]), workshop.leg_length_step), *sides):
-            rows_out.append((length, sn, sp, most, columns, rows))
+        # the thermal resistance of all legs together is kept: it, not the length, is what the optimum sets
+        length = float(free.leg_length[0]) * scale**2 * columns * rows / (2 * couples)
+        length = float(np.clip(length, *limits.leg_length))
+        for rounded in product(_both(length, workshop.leg_length_step), *sides):
+            rows_out.append((*rounded, most, columns, rows))
     return _assemble(brief, free, rows_out)
 
 
