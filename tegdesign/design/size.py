@@ -63,6 +63,13 @@ class Sizing:
         """What is missed, worst first."""
         return tuple(sorted(self.rating.failed, key=lambda c: c.margin / max(abs(c.limit), 1e-12)))
 
+    @property
+    def assumed_limits(self) -> dict[str, Any]:
+        """Limits and workshop steps that the brief left at their defaults, as they would be written."""
+        written = self.brief.model_dump(exclude_none=True)
+        keys = [k.split(".") for k in defaults(self.brief.model_dump(exclude_unset=True), Brief)]
+        return {f"{k[0]}.{k[1]}": written[k[0]][k[1]] for k in keys if k[0] in ("limits", "workshop")}
+
     def to_frame(self) -> pd.DataFrame:
         """Return the states of the design as a table."""
         return self.rating.to_frame()
@@ -76,6 +83,7 @@ class Sizing:
             f"aimed_{unit}": self.objective,
             f"aimed_before_rounding_{unit}": self.objective_before_rounding,
             "binding": [asdict(b) for b in self.binding],
+            "assumed_limits": self.assumed_limits,
             "failed": [{**asdict(c), "margin": c.margin} for c in self.failed],
             "rating": self.rating.to_dict(),
         }
@@ -298,11 +306,8 @@ def _design(brief: Brief, n: str, p: str, c: Candidates) -> Design:
 
 
 def _assumed(brief: Brief) -> list[str]:
-    """Return the keys of the stack and limits that the brief left at their defaults."""
-    written = brief.model_dump(exclude_unset=True)
-    return [
-        key for key in defaults(written, Brief) if key.split(".")[0] in ("stack", "limits") and key != "limits.couples"
-    ]
+    """Return the keys of the stack that the brief left at their defaults."""
+    return [key for key in defaults(brief.model_dump(exclude_unset=True), Brief) if key.startswith("stack.")]
 
 
 def _objective(brief: Brief, rating: Rating) -> float:

@@ -41,4 +41,12 @@ def sizing_report(sizing: Sizing) -> str:
     if sizing.binding:
         rows = [[b.name, b.value, b.limit] for b in sizing.binding]
         binding = "What binds (more would need this to give way)\n" + table_text(["limit", "here", "bound"], rows)
-    return "\n\n".join([verdict(sizing), aim, binding, rating_report(sizing.rating)])
+    parts = [verdict(sizing), aim, binding, rating_report(sizing.rating).rstrip()]
+    if sizing.assumed_limits:
+        rows = [[key, _value(value)] for key, value in sizing.assumed_limits.items()]
+        parts.append("LIMITS AND STEPS OF THE BRIEF TAKEN FROM DEFAULTS\n" + table_text(["key", "value"], rows))
+    return "\n\n".join(parts)
+
+
+def _value(value: object) -> str:
+    return " to ".join(map(str, value)) if isinstance(value, (list, tuple)) else str(value)
