@@ -8,36 +8,35 @@ Temperature is the independent variable and G = -kappa L dT/dx the unknown:
     =>  G(T) = Q_c + j a(T) - j^2 W(T),   a = integral_{Tc}^{T} S dT - S T,   W = integral_{Tc}^{T} rho kappa / G dT
 
 Only S itself is needed, never dS/dT, and Q_h - Q_c = j (E - j r) with E = integral S dT, r = W(T_hot) holds by
-construction: nothing is lost between heat and power. Gauss collocation on panels that end at the table points.
-Valid while T falls from hot to cold without a maximum inside (G > 0); otherwise the solver says so.
+construction: nothing is lost between heat and power. Gauss collocation on panels that end at the table points;
+G found on the nodes (``iterate``) is held against the equation above, and legs where the two differ too much are
+solved again on nodes of their own. Valid while T falls from hot to cold without a maximum inside (G > 0), which is
+so beyond the short-circuit current for most materials; otherwise the solver says so.
 Equations: standard one-dimensional thermoelectric transport, e.g. Domenicali 1954, Rev. Mod. Phys. 26, 237,
 doi 10.1103/RevModPhys.26.237.
 """
 
 from __future__ import annotations
 
-from dataclasses import dataclass, fields
-from functools import lru_cache
-from typing import NamedTuple
+from dataclasses import dataclass, fields, replace
+from typing import Any
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from tegdesign.errors import ConvergenceError
-from tegdesign.leg.panels import Panels, gauss_rule, prepare
+from tegdesign.leg.iterate import Slopes, slopes_of, solve_nodes
+from tegdesign.leg.nodes import Nodes, own_nodes, shared_nodes
+from tegdesign.leg.panels import Panels, prepare
 from tegdesign.material.curve import Array
 from tegdesign.material.material import Material
 
+__all__ = ["LegSolution", "Slopes", "solve_leg"]
+
 _CHUNK = 512  # legs solved together: the working arrays stay in the cache
-_PLAIN = 16  # plain iterations before Newton's method takes over the legs that do not settle
-
-
-class Slopes(NamedTuple):
-    """Derivatives of one result by hot temperature, cold temperature and scaled current."""
-
-    hot: Array
-    cold: Array
-    current: Array
+_QUICK = 8  # iterations before a leg is taken for one of very strong current
+_FINE, _TIGHT = 8, 1e-10  # Gauss points a panel and tolerance for those
+_MISFIT = 3e-8  # largest error of integration, relative to the conducted heat; about 4e-7 in power
 
 
 @dataclass(frozen=True)
@@ -90,12 +89,15 @@ def solve_leg(
     Parameters
     ----------
     hot, cold : array_like
-        End temperatures [K]. A leg with hot below cold is solved as its mirror image. Outside the material's
-        range the end values are held: whoever calls decides whether that may be used.
+        End temperatures [K], not equal. A leg with hot below cold is solved as its mirror image. Outside the
+        material's range the end values are held: whoever calls decides whether that may be used.
     scaled_current : array_like
         j = J L [A/m], J the current density from the hot to the cold end.
+    points, subdivide : int
+        Gauss points in each panel, and into how many panels each table interval is split. 3 points give about 1e-6
+        in power, 4 about 1e-8; a table that turns sharply costs up to two digits.
     tolerance : float
-        Largest change of the last iteration relative to the conducted heat.
+        Estimated error left by the iteration, relative to the conducted heat.
     slopes : bool
         Also return exact derivatives.
     check : bool
@@ -115,17 +117,22 @@ def solve_leg(
     panels = prepare(material, points, subdivide)
     order, groups = _group(panels, lower, upper)
     parts = [
-        _solve_chunk(panels, lower[g], upper[g], scaled[g], tolerance, max_iterations, slopes) for g in groups
+        _solve_chunk(material, panels, lower[g], upper[g], scaled[g], tolerance, max_iterations, slopes)
+        for g in groups
     ]
     raw = _gather(parts, order)
-    result = _reflect(raw, mirrored, sign, shape)
+    result = _reflect(raw, scaled, mirrored, shape)
     if check and not np.all(result.converged):
         bad = np.flatnonzero(~result.converged.ravel())
         k = bad[0]
+        what = (
+            "its two ends have the same temperature; give it a difference"
+            if h[k] == c[k]
+            else "the current is too large for this temperature difference; choose a smaller one"
+        )
         raise ConvergenceError(
-            f"leg of {material.name}: no steady solution with temperature falling from {h[k]:g} K to {c[k]:g} K at "
-            f"J L = {j[k]:.6g} A/m ({bad.size} of {h.size} legs); the current is too large for this temperature "
-            "difference, choose a smaller one"
+            f"leg of {material.name}: no steady state with temperature falling all the way between {h[k]:g} K (hot) "
+            f"and {c[k]:g} K (cold) at J L = {j[k]:.6g} A/m ({bad.size} of {h.size} legs): {what}"
         )
     return result
 
@@ -151,7 +158,7 @@ def _gather(parts: list[LegSolution], order: NDArray[np.intp]) -> LegSolution:
         out[order] = np.concatenate(values)
         return out
 
-    merged: dict[str, object] = {}
+    merged: dict[str, Any] = {}
     for f in fields(LegSolution):
         column = [getattr(p, f.name) for p in parts]
         if f.name == "iterations":
@@ -162,256 +169,88 @@ def _gather(parts: list[LegSolution], order: NDArray[np.intp]) -> LegSolution:
             merged[f.name] = Slopes(*(back([s[i] for s in column]) for i in range(3)))
         else:
             merged[f.name] = back(column)
-    return LegSolution(**merged)  # type: ignore[arg-type]
+    return LegSolution(**merged)
 
 
-def _reflect(raw: LegSolution, mirrored: NDArray[np.bool_], sign: Array, shape: tuple[int, ...]) -> LegSolution:
+def _reflect(raw: LegSolution, j: Array, mirrored: NDArray[np.bool_], shape: tuple[int, ...]) -> LegSolution:
     """Turn legs solved as mirror images back: what left the cold end then enters the hot end, and so on."""
-
-    def form(a: Array) -> Array:
-        return a.reshape(shape)
-
     if not mirrored.any():
-        cold, hot, qs, rs = raw.cold_heat, raw.hot_heat, raw.cold_heat_slopes, raw.resistance_slopes
         if len(shape) == 1:
             return raw
+        out = {f.name: getattr(raw, f.name) for f in fields(raw)}
     else:
-        cold = np.where(mirrored, -raw.hot_heat, raw.cold_heat)
-        hot = np.where(mirrored, -raw.cold_heat, raw.hot_heat)
-        qs, rs = raw.cold_heat_slopes, raw.resistance_slopes
-        if qs is not None and rs is not None:
-            raise ConvergenceError("derivatives of a leg are known only with the hot end hotter than the cold end")
-    return LegSolution(
-        form(cold),
-        form(hot),
-        form(raw.power),
-        form(raw.voltage * sign),
-        form(raw.resistance),
-        form(np.where(mirrored, raw.seebeck_cold, raw.seebeck_hot)),
-        form(np.where(mirrored, raw.seebeck_hot, raw.seebeck_cold)),
-        raw.converged.reshape(shape),
-        raw.iterations,
-        None if qs is None else Slopes(*(form(s) for s in qs)),
-        None if rs is None else Slopes(*(form(s) for s in rs)),
-    )
+
+        def pick(image: Array, own: Array) -> Array:
+            return np.where(mirrored, image, own)
+
+        q, r = raw.cold_heat_slopes, raw.resistance_slopes
+        if q is not None and r is not None:
+            by_hot = q.hot + j * (raw.seebeck_hot - j * r.hot)  # of the heat entering at the hotter end
+            by_cold = q.cold - j * (raw.seebeck_cold + j * r.cold)
+            by_current = q.current + raw.voltage - j * (2 * raw.resistance + j * r.current)
+            q = Slopes(pick(-by_cold, q.hot), pick(-by_hot, q.cold), pick(by_current, q.current))
+            r = Slopes(pick(r.cold, r.hot), pick(r.hot, r.cold), pick(-r.current, r.current))
+        out = {
+            "cold_heat": pick(-raw.hot_heat, raw.cold_heat),
+            "hot_heat": pick(-raw.cold_heat, raw.hot_heat),
+            "power": raw.power,
+            "voltage": pick(-raw.voltage, raw.voltage),
+            "resistance": raw.resistance,
+            "seebeck_hot": pick(raw.seebeck_cold, raw.seebeck_hot),
+            "seebeck_cold": pick(raw.seebeck_hot, raw.seebeck_cold),
+            "converged": raw.converged,
+            "iterations": raw.iterations,
+            "cold_heat_slopes": q,
+            "resistance_slopes": r,
+        }
+    for name, value in out.items():
+        if isinstance(value, Slopes):
+            out[name] = Slopes(*(v.reshape(shape) for v in value))
+        elif isinstance(value, np.ndarray):
+            out[name] = value.reshape(shape)
+    return LegSolution(**out)
 
 
 def _solve_chunk(
-    panels: Panels, lower: Array, upper: Array, j: Array, tolerance: float, max_iterations: int, slopes: bool
+    material: Material,
+    panels: Panels,
+    lower: Array,
+    upper: Array,
+    j: Array,
+    tolerance: float,
+    max_iterations: int,
+    slopes: bool,
 ) -> LegSolution:
-    """Solve legs (B,) in one go: node arrays have shape (nodes, B), cold end first."""
-    m = panels.points
-    x, _, _ = gauss_rule(m)
-    edges = panels.edges
-    last = edges.size - 2
-    kc = np.minimum(np.searchsorted(edges, lower, side="right") - 1, last)
-    kh = np.maximum(np.searchsorted(edges, upper, side="left") - 1, 0)
-    low_end = np.minimum(edges[kc + 1], upper)
-    high_start = np.maximum(edges[kh], low_end)
-    first, stop = int(kc.min()) + 1, int(kh.max())
-    inner = max(stop - first, 0)
-    size, nodes = lower.size, (inner + 2) * m
+    """Solve legs (B,) in one go, those of very strong current a second time on nodes of their own."""
+    first = _solve_on(shared_nodes(panels, lower, upper), j, tolerance, min(_QUICK, max_iterations), slopes)
+    if first.converged.all():
+        return first
+    hard = ~first.converged
+    nodes = own_nodes(prepare(material, _FINE), lower[hard], upper[hard])
+    again = _solve_on(nodes, j[hard], min(tolerance, _TIGHT), max_iterations, slopes, strong=True)
+    for f in fields(first):
+        old, new = getattr(first, f.name), getattr(again, f.name)
+        if isinstance(old, np.ndarray):
+            old[hard] = new
+        elif isinstance(old, Slopes):
+            for a, b in zip(old, new, strict=True):
+                a[hard] = b
+    return replace(first, iterations=first.iterations + again.iterations)
 
-    conductivity = np.empty((nodes, size))  # kappa times width
-    product = np.empty((nodes, size))  # rho kappa times width
-    thomson = np.empty((nodes, size))  # a(T)
-    to_ends = np.concatenate([[0.0], x, [1.0]])[:, None]
-    ends = []
-    for rows, panel, start, width in (
-        (slice(0, m), kc, lower, low_end - lower),
-        (slice(nodes - m, nodes), kh, high_start, upper - high_start),
-    ):
-        t = start + to_ends * width
-        seebeck, integral, resistivity, kappa = panels.at(panel, t)
-        ends.append((seebeck, integral, resistivity, kappa.copy()))
-        kappa *= width
-        conductivity[rows] = kappa[1:-1]
-        np.multiply(resistivity[1:-1], kappa[1:-1], out=product[rows])
-        np.subtract(integral[1:-1], (seebeck * t)[1:-1], out=thomson[rows])
-    seebeck_c, integral_c, resistivity_c, kappa_c = (v[0] for v in ends[0])
-    seebeck_h, integral_h, resistivity_h, kappa_h = (v[-1] for v in ends[1])
-    if inner:
-        body = slice(m, nodes - m)
-        width = np.diff(edges)[first:stop, None]
-        conductivity[body] = (panels.conductivity[first:stop] * width).reshape(-1, 1)
-        product[body] = (panels.product[first:stop] * width).reshape(-1, 1)
-        thomson[body] = panels.thomson[first:stop].reshape(-1, 1)
-        k = np.arange(first, stop)[:, None]
-        below, above = k <= kc, k >= kh
-        if below.any() or above.any():
-            shape = (inner, m, size)
-            unused = (below | above)[:, None, :]
-            np.copyto(conductivity[body].reshape(shape), 0.0, where=unused)
-            np.copyto(product[body].reshape(shape), 0.0, where=unused)
-            level = np.where(below, integral_c - seebeck_c * lower, integral_h - seebeck_h * upper)
-            np.copyto(thomson[body].reshape(shape), level[:, None, :], where=unused)
-    thomson -= integral_c
-    cumulative, total = _integration(m, inner + 2)
-    conductivity *= total[:, None]
-    with np.errstate(divide="ignore", over="ignore", invalid="ignore"):  # judged by ``settled`` below
-        state = _iterate(conductivity, product, thomson, j, cumulative, total, tolerance, max_iterations)
-    voltage = integral_h - integral_c
-    flow, resistance = state.flow, state.resistance
-    power = j * (voltage - j * resistance)
-    end_c = flow - j * seebeck_c * lower  # G at the cold and at the hot end
-    end_h = flow + power - j * seebeck_h * upper
-    with np.errstate(invalid="ignore"):
-        sound = state.settled & (state.inverse.min(axis=0) > 0) & (end_c > 0) & (end_h > 0)
-    by_flow = by_resistance = None
-    if slopes:
-        with np.errstate(divide="ignore", over="ignore", invalid="ignore"):
-            by_flow, by_resistance = _slopes(
-                state, conductivity, product, thomson, j, cumulative, total,
-                (kappa_h / end_h, resistivity_h), (kappa_c / end_c, resistivity_c), seebeck_c,
-            )
+
+def _solve_on(
+    nodes: Nodes, j: Array, tolerance: float, max_iterations: int, slopes: bool, strong: bool = False
+) -> LegSolution:
+    cold, hot = nodes.cold, nodes.hot
+    with np.errstate(divide="ignore", over="ignore", invalid="ignore"):  # judged by ``sound``
+        state = solve_nodes(nodes, j, tolerance, max_iterations, strong)
+        voltage = hot.voltage - cold.voltage
+        power = j * (voltage - j * state.resistance)
+        at_cold = state.flow - j * cold.seebeck * cold.temperature  # G at the two ends
+        at_hot = state.flow + power - j * hot.seebeck * hot.temperature
+        sound = state.settled & (state.misfit < max(_MISFIT, tolerance)) & (at_cold > 0) & (at_hot > 0)
+        by_flow, by_resistance = slopes_of(nodes, j, state, at_hot, at_cold) if slopes else (None, None)
     return LegSolution(
-        flow, flow + power, power, voltage, resistance, seebeck_h, seebeck_c, sound, state.iterations,
-        by_flow, by_resistance,
+        state.flow, state.flow + power, power, voltage, state.resistance, hot.seebeck, cold.seebeck, sound,
+        state.iterations, by_flow, by_resistance,
     )
-
-
-@lru_cache(maxsize=64)
-def _integration(points: int, panels: int) -> tuple[Array, Array]:
-    """Return the matrix of integrals from the cold end to every node, and the weights of the whole integral."""
-    _, w, to_node = gauss_rule(points)
-    full = np.kron(np.tril(np.ones((panels, panels)), -1), np.tile(w, (points, 1)))
-    return full + np.kron(np.eye(panels), to_node), np.tile(w, panels)
-
-
-class _State(NamedTuple):
-    flow: Array
-    inverse: Array  # 1/G at the nodes
-    joule: Array  # W at the nodes
-    resistance: Array
-    settled: NDArray[np.bool_]
-    iterations: int
-
-
-def _iterate(
-    conductivity: Array,
-    product: Array,
-    thomson: Array,
-    j: Array,
-    cumulative: Array,
-    total: Array,
-    tolerance: float,
-    max_iterations: int,
-) -> _State:
-    """Iterate W on G and one Newton step on Q_c in turn; the error falls by about Z dT / 4 or faster each time.
-
-    Start: G^2 = K^2 + 2 (mean(phi) - phi), phi = j^2 integral rho kappa - j K a, right to first order in j.
-    """
-    conducted = conductivity.sum(axis=0)
-    square, j_square = conducted**2, j * j
-    drift = thomson * j
-    heating = product * -j_square
-    g = cumulative @ heating
-    g += drift * conducted
-    mean = np.einsum("nb,nb->b", conductivity, g) / conducted
-    g += 0.5 * square - mean
-    g *= 2.0
-    np.maximum(g, 1e-4 * square, out=g)
-    np.sqrt(g, out=g)
-    u, v = np.divide(1.0, g), np.empty_like(g)
-    level = np.einsum("nb,nb->b", conductivity, g) / conducted  # mean of G, to be kept by the first step
-    flow = heated = conducted
-    for iteration in range(1, max_iterations + 1):
-        np.multiply(heating, u, out=v)
-        before, heated = heated, total @ v
-        np.matmul(cumulative, v, out=g)
-        g += drift
-        if iteration == 1:
-            flow = level - np.einsum("nb,nb->b", conductivity, g) / conducted
-        g += flow
-        np.divide(1.0, g, out=u)
-        np.multiply(conductivity, u, out=v)
-        step = (np.einsum("nb,nb->b", conductivity, u) - 1.0) / np.einsum("nb,nb->b", v, u)
-        flow = flow + step
-        change = (np.abs(step) + np.abs(heated - before)) / conducted
-        if iteration > 1 and change.max() < tolerance:
-            break
-        if iteration == _PLAIN and not change.max() < 1e-3:
-            break
-        np.multiply(u, u, out=v)  # let the next W know of the step in Q_c
-        v *= step
-        u -= v
-    settled = change < tolerance
-    if not settled.all():  # only strong currents, far above those of best power and efficiency
-        late = ~settled
-        flow[late], u[:, late], settled[late], more = _newton(
-            conductivity[:, late], heating[:, late], drift[:, late], cumulative, tolerance, max_iterations
-        )
-        iteration += more
-    np.multiply(product, u, out=v)
-    return _State(flow, u, cumulative @ v, total @ v, settled, iteration)
-
-
-def _newton(
-    conductivity: Array,
-    heating: Array,
-    drift: Array,
-    cumulative: Array,
-    tolerance: float,
-    max_iterations: int,
-) -> tuple[Array, Array, NDArray[np.bool_], int]:
-    """Solve the legs of strong current by Newton's method on G, its steps limited so that G stays positive.
-
-    The linear equation dG = D + integral p dG, p = j^2 rho kappa / G^2, has one integrating factor.
-    """
-    conducted = conductivity.sum(axis=0)
-    g = np.repeat(conducted[None, :], conductivity.shape[0], axis=0)
-    flow = conducted.copy()
-    for iteration in range(1, max_iterations + 1):  # noqa: B007
-        u = 1.0 / g
-        v = heating * u
-        misfit = flow + drift + cumulative @ v - g
-        kernel = -v * u
-        growth = np.exp(np.minimum(cumulative @ kernel, 50.0))
-        response = misfit + growth * (cumulative @ (kernel * misfit / growth))
-        weight = conductivity * u
-        pull = weight * u
-        step = (weight.sum(axis=0) - 1.0 - (pull * response).sum(axis=0)) / (pull * growth).sum(axis=0)
-        change = response + growth * step
-        limit = np.minimum(1.0, 0.7 / np.max(-change * u, axis=0, initial=1e-9))
-        limit = np.minimum(limit, 3.0 / np.max(change * u, axis=0, initial=1e-9))
-        g += limit * change
-        flow += limit * step
-        size = (np.abs(change).max(axis=0) + np.abs(step)) / conducted
-        if size.max() < tolerance:
-            break
-    u = 1.0 / (flow + drift + cumulative @ (heating / g))
-    return flow, u, size < tolerance, iteration
-
-
-def _slopes(
-    state: _State,
-    conductivity: Array,
-    product: Array,
-    thomson: Array,
-    j: Array,
-    cumulative: Array,
-    total: Array,
-    hot: tuple[Array, Array],
-    cold: tuple[Array, Array],
-    seebeck_cold: Array,
-) -> tuple[Slopes, Slopes]:
-    """Differentiate the leg: G answers to a source D as D + mu integral(p D / mu), mu = exp(integral p)."""
-    u_square = state.inverse**2
-    weight = product * u_square
-    kernel = weight * (j * j)
-    growth = np.exp(cumulative @ kernel)
-    source = thomson - 2 * j * state.joule
-    by_current = source + growth * (cumulative @ (kernel * source / growth))
-    conductivity = conductivity * u_square
-    m_flow = np.einsum("nb,nb->b", conductivity, growth)
-    m_current = np.einsum("nb,nb->b", conductivity, by_current)
-    r_flow, r_current = total @ (weight * growth), total @ (weight * by_current)
-    (k_h, rho_h), (k_c, rho_c) = hot, cold
-    end = -j * seebeck_cold + j * j * rho_c * k_c
-    flow = Slopes(k_h / m_flow, -k_c / m_flow - end, -m_current / m_flow)
-    resistance = Slopes(
-        -r_flow * flow.hot + rho_h * k_h,
-        -r_flow * (flow.cold + end) - rho_c * k_c,
-        -r_flow * flow.current - r_current,
-    )
-    return flow, resistance

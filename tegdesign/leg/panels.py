@@ -18,6 +18,7 @@ from tegdesign.material.material import Material
 # Panels with the end values held reach from here up to this far above the last point, so that an iteration may
 # wander outside the data; whether the answer may stay there is decided by whoever asked for it.
 _LOWEST, _BEYOND = 1.0, 3000.0
+_STEEP = np.log(2.0)  # a table interval over which rho or kappa changes by more than this factor is split
 
 
 @lru_cache(maxsize=8)
@@ -30,42 +31,44 @@ def gauss_rule(points: int) -> tuple[Array, Array, Array]:
     return x, w, to_node
 
 
+def horner(coefficients: Array, s: Array) -> Array:
+    """Return the polynomial of coefficients (powers, ...), lowest first, at s; shapes (...) broadcast."""
+    out: Array = s * coefficients[-1]
+    for c in coefficients[-2:0:-1]:
+        out += c
+        out *= s
+    out += coefficients[0]
+    return out
+
+
 @dataclass(frozen=True, eq=False)
 class Panels:
-    """Node data of one material, K panels of m nodes.
+    """One material on K panels with m nodes each.
 
     Attributes
     ----------
     edges : ndarray (K+1,)
         Table temperatures [K] with a held panel below and above.
-    coefficients : ndarray (3, 4, K)
-        Cubics of S, rho, kappa from the left edge of each panel, lowest power first.
-    seebeck_integral : ndarray (K+1,)
-        Integral of S dT up to each edge [V].
+    coefficients : ndarray (17, K)
+        Polynomials in T less the left edge, lowest power first: rows 0 to 4 the Thomson integral
+        (integral of S dT) - S T [V], then four each of rho, kappa and S.
     conductivity, product, thomson : ndarray (K, m)
-        kappa, rho kappa and (integral of S dT) - S T at the nodes.
+        At the nodes: kappa times width and Gauss weight, rho kappa times width, the Thomson integral.
     """
 
     points: int
     edges: Array
     coefficients: Array
-    seebeck_integral: Array
     conductivity: Array
     product: Array
     thomson: Array
 
-    def at(self, panel: NDArray[np.intp], temperature: Array) -> tuple[Array, Array, Array, Array]:
-        """Return S, integral of S dT, rho and kappa at temperatures (..., B) lying in panels (B,)."""
-        s = temperature - self.edges[panel]
-        (a0, a1, a2, a3), (b0, b1, b2, b3), (c0, c1, c2, c3) = self.coefficients[:, :, panel]
-        seebeck = a0 + s * (a1 + s * (a2 + s * a3))
-        integral = self.seebeck_integral[panel] + s * (a0 + s * (a1 / 2 + s * (a2 / 3 + s * (a3 / 4))))
-        return (
-            seebeck,
-            integral,
-            b0 + s * (b1 + s * (b2 + s * b3)),
-            c0 + s * (c1 + s * (c2 + s * c3)),
-        )
+    def pick(self, panel: NDArray[np.intp]) -> Array:
+        """Return the coefficients (17, ...) of panels (...)."""
+        return self.coefficients.take(panel, axis=1, mode="clip")  # the quickest of the modes
+
+
+THOMSON, RHO, KAPPA, SEEBECK = slice(0, 5), slice(5, 9), slice(9, 13), slice(13, 17)  # rows of the coefficients
 
 
 def prepare(material: Material, points: int = 4, subdivide: int = 1) -> Panels:
@@ -74,7 +77,7 @@ def prepare(material: Material, points: int = 4, subdivide: int = 1) -> Panels:
     Parameters
     ----------
     points : int
-        Gauss points in each panel; 3 give about 4e-7 in power, 4 about 1e-8.
+        Gauss points in each panel.
     subdivide : int
         Split every panel into so many equal ones, to show convergence.
     """
@@ -89,28 +92,31 @@ def prepare(material: Material, points: int = 4, subdivide: int = 1) -> Panels:
 
 def _prepare(curves: tuple[Curve, Curve, Curve], points: int, subdivide: int) -> Panels:
     table = np.unique(np.concatenate([c.temperature for c in curves]))
-    if subdivide > 1:
-        steps = np.arange(subdivide) / subdivide
-        table = np.append((table[:-1, None] + np.diff(table)[:, None] * steps).ravel(), table[-1])
+    change = np.max([np.abs(np.diff(np.log(c(table)))) for c in curves[1:]], axis=0)
+    parts = subdivide * np.ceil(np.maximum(change / _STEEP, 1.0)).astype(int)
+    step = np.repeat(np.diff(table) / parts, parts)
+    within = np.arange(parts.sum()) - np.repeat(np.cumsum(parts) - parts, parts)
+    table = np.append(np.repeat(table[:-1], parts) + within * step, table[-1])
     edges = np.concatenate([[min(_LOWEST, table[0] / 2)], table, [table[-1] + _BEYOND]])
-    coefficients = np.stack([_on_panels(c, edges) for c in curves])
-    width = np.diff(edges)
-    a0, a1, a2, a3 = coefficients[0]
-    steps = width * (a0 + width * (a1 / 2 + width * (a2 / 3 + width * a3 / 4)))
-    x, _, _ = gauss_rule(points)
-    panels = Panels(
-        points, edges, coefficients, np.concatenate([[0.0], np.cumsum(steps)]), *(np.empty(0),) * 3
+    left, width = edges[:-1], np.diff(edges)
+    seebeck, rho, kappa = (_on_panels(c, edges) for c in curves)
+    a0, a1, a2, a3 = seebeck
+    none = np.zeros_like(left)
+    integral = np.stack([none, a0, a1 / 2, a2 / 3, a3 / 4])
+    product = np.stack([a0 * left, a1 * left + a0, a2 * left + a1, a3 * left + a2, a3])  # S T
+    thomson = integral - product
+    thomson[0, 1:] += np.cumsum(horner(integral, width))[:-1]
+    x, weight, _ = gauss_rule(points)
+    s = x[:, None] * width
+    conductivity = horner(kappa, s) * width
+    return Panels(
+        points,
+        edges,
+        np.concatenate([thomson, rho, kappa, seebeck]),
+        conductivity.T * weight,
+        (horner(rho, s) * conductivity).T.copy(),
+        horner(thomson, s).T.copy(),
     )
-    nodes = edges[:-1] + x[:, None] * width
-    seebeck, integral, resistivity, conductivity = panels.at(np.arange(width.size), nodes)
-    fill = {
-        "conductivity": conductivity.T.copy(),
-        "product": (resistivity * conductivity).T.copy(),
-        "thomson": (integral - seebeck * nodes).T.copy(),
-    }
-    for name, values in fill.items():
-        object.__setattr__(panels, name, values)
-    return panels
 
 
 def _on_panels(curve: Curve, edges: Array) -> Array:
