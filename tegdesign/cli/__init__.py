@@ -18,6 +18,7 @@ COMMANDS = {
     "size": "Size a generator for a brief: design file, report, sheet.",
     "rate": "Rate a given design: report, operating table, curves, maps.",
     "compare": "Rank pairs of materials for a brief.",
+    "sheet": "Write the design sheet of a given design, PDF or Markdown.",
     "materials": "List, show and check thermoelectric materials.",
 }
 

@@ -36,8 +36,12 @@ def compare(
     """
     from tegdesign.design.compare import compare as compare_pairs
     from tegdesign.sheet.comparison import comparison_report, draw_comparison
+    from tegdesign.sheet.drawing import check_ending
 
     form = output.style(json, csv)
+    if figure is not None:
+        check_ending(figure)
+    output.check_places(figure, to)
     result = compare_pairs(brief, progress=on_terminal("comparing", quiet))
     if figure is not None:
         draw_comparison(result, figure)

@@ -25,6 +25,7 @@ __all__ = [
     "CsvOption",
     "JsonOption",
     "OutputOption",
+    "check_places",
     "csv_text",
     "emit",
     "json_text",
@@ -50,6 +51,15 @@ def emit(text: str, output: Path | None = None) -> None:
         from tegdesign.document import write_whole
 
         write_whole(output, text)
+
+
+def check_places(*places: Path | None) -> None:
+    """Refuse files that could not be written before the work for them begins, so that none is written alone."""
+    from tegdesign.document import check_place
+
+    for place in places:
+        if place is not None and str(place) != "-":
+            check_place(place)
 
 
 def note(text: str) -> None:

@@ -57,6 +57,7 @@ def rate(
         raise typer.BadParameter("give temperatures and loads, or --curve, or --map; one at a time")
     if figure is not None and not (curve or over):
         raise typer.BadParameter("--figure goes with --curve or --map")
+    output.check_places(figure, to)
     if not (table or curve or over):
         _report(design, form, to)
         return
@@ -73,7 +74,8 @@ def rate(
         sweep.column(of)
         picture = "map"
     else:
-        sweep = operating_table(made, hot=_temperatures(hot), cold=_temperatures(cold), loads=_loads(load, current))
+        hots, colds = _temperatures("--hot", hot), _temperatures("--cold", cold)
+        sweep = operating_table(made, hot=hots, cold=colds, loads=_loads(load, current))
         picture = ""
     if figure is not None:
         from tegdesign.sheet.sweep import draw_curve, draw_map
@@ -109,42 +111,50 @@ def _text(sweep: Sweep, form: output.Style, of: str) -> str:
     return sweep_table(sweep, of)
 
 
-def _list(text: str | None) -> list[str]:
+def _list(option: str, text: str | None) -> list[str]:
     parts = [part.strip() for part in text.split(",")] if text else []
     if any(not part for part in parts):
-        raise InputError(f"list '{text}' has an empty place; write values with units, separated by commas")
+        raise InputError(f"{option}: list '{text}' has an empty place; write values with units, parted by commas")
     return parts
 
 
-def _temperatures(text: str | None) -> list[float]:
+def _parse(option: str, part: str, unit: str, mend: str = "") -> float:
     from tegdesign.quantity import parse
 
-    values = [parse(part, "K") for part in _list(text)]
-    for part, value in zip(_list(text), values, strict=True):
+    try:
+        return parse(part, unit)
+    except InputError as error:
+        raise InputError(f"{option}: {error}{mend}") from error
+
+
+def _temperatures(option: str, text: str | None) -> list[float]:
+    parts = _list(option, text)
+    values = [_parse(option, part, "K") for part in parts]
+    for part, value in zip(parts, values, strict=True):
         if not 0 < value < 4000:
-            raise InputError(f"temperature '{part}' is {value:g} K, outside 0 K..4000 K; mend it")
+            raise InputError(f"{option}: '{part}' is {value:g} K, outside 0 K..4000 K; mend it")
     return values
 
 
 def _loads(load: str | None, current: str | None) -> list[AnyLoad]:
-    from tegdesign.quantity import SI, parse
+    from tegdesign.quantity import SI
     from tegdesign.system.load import BestEfficiency, GivenCurrent, Matched, Resistance
 
     found: list[AnyLoad] = []
-    for part in _list(load):
+    for part in _list("--load", load):
         if part == "matched":
             found.append(Matched())
         elif part == "efficiency":
             found.append(BestEfficiency())
         else:
-            value = parse(part, "ohm")
+            value = _parse("--load", part, "ohm", ", nor matched or efficiency")
             if value <= 0:
-                raise InputError(f"load '{part}' must be above 0 ohm")
+                raise InputError(f"--load: '{part}' must be above 0 ohm")
             found.append(Resistance(resistance=SI(value)))
-    for part in _list(current):
-        value = parse(part, "A")
+    for part in _list("--current", current):
+        value = _parse("--current", part, "A")
         if value < 0:
-            raise InputError(f"current '{part}' must be 0 A or more")
+            raise InputError(f"--current: '{part}' must be 0 A or more")
         found.append(GivenCurrent(current=SI(value)))
     return found
 
@@ -152,8 +162,8 @@ def _loads(load: str | None, current: str | None) -> list[AnyLoad]:
 def _axis(text: str) -> tuple[str, list[str | float]]:
     key, mark, values = text.partition("=")
     if not mark or not values.strip():
-        raise InputError(f"map '{text}' is not KEY=LIST, like \"module.leg_length=1 mm, 2 mm\"")
-    return key.strip(), [_number(part) for part in _list(values)]
+        raise InputError(f"--map: '{text}' is not KEY=LIST, like \"module.leg_length=1 mm, 2 mm\"")
+    return key.strip(), [_number(part) for part in _list("--map", values)]
 
 
 def _number(text: str) -> str | float:

@@ -26,7 +26,7 @@ def material(name: str, polarity: str, folder: str | None) -> Material:
     found = find(name, [folder] if folder else [])
     if found.polarity != polarity:
         raise InputError(
-            f"materials.{polarity}: '{name}' is {found.polarity}-type; choose a {polarity}-type material "
+            f"materials.{polarity}: '{name}' is {found.polarity}-type; choose one of type {polarity} "
             f"(tegdesign materials --polarity {polarity} lists them)"
         )
     return found

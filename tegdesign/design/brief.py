@@ -25,6 +25,10 @@ from tegdesign.system.load import AnyLoad, Matched
 from tegdesign.system.model import Part
 
 
+DESIGN_FILE = "a design, not a brief: tegdesign rate and tegdesign sheet take it"
+MATERIAL_FILE = "a material file: tegdesign materials check takes it, and a brief or design names it"
+
+
 class Pair(MaterialUse):
     """Materials that may be used: a name, a list of names, or nothing for every one of the library."""
 
@@ -54,7 +58,8 @@ class Limits(Part):
         for name in ("leg_length", "leg_side", "couples"):
             low, high = getattr(self, name)
             if low > high:
-                raise ValueError(f"{name} is upside down: {low:g} is above {high:g}")
+                words = [str(v) if name == "couples" else write(v, "m", "mm") for v in (low, high)]
+                raise ValueError(f"{name} is upside down: {words[0]} is above {words[1]}")
         room = [side - 2 * self.edge_margin for side in self.footprint]
         cell = self.leg_side[0] + self.gap
         if min(room) < cell or max(room) < 2 * cell:
@@ -115,7 +120,7 @@ def read_brief(path: str | os.PathLike[str]) -> Brief:
     InputError
         The file cannot be used; the message names file, line, value, limit and the mend.
     """
-    return load(path, Brief)
+    return load(path, Brief, {"module": DESIGN_FILE, "points": MATERIAL_FILE})
 
 
 def as_brief(brief: Brief | str | os.PathLike[str]) -> Brief:

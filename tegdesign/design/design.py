@@ -8,7 +8,7 @@ from typing import Annotated, Any
 
 from pydantic import BaseModel, Field, model_validator
 
-from tegdesign.design.brief import check_direction
+from tegdesign.design.brief import MATERIAL_FILE, check_direction
 from tegdesign.design.parts import Aim, Count, Length, Losses, MaterialUse, Require, Stack, Thickness
 from tegdesign.document import load, to_toml, write_whole
 from tegdesign.errors import InputError
@@ -16,6 +16,9 @@ from tegdesign.quantity import write
 from tegdesign.system.boundary import AnyBoundary
 from tegdesign.system.load import AnyLoad, Matched
 from tegdesign.system.model import Part
+
+
+BRIEF_FILE = "a brief, not a design: tegdesign size makes a design of it"
 
 
 class Chosen(MaterialUse):
@@ -149,7 +152,7 @@ def read_design(path: str | os.PathLike[str]) -> Design:
     InputError
         The file cannot be used; the message names file, line, value, limit and the mend.
     """
-    return load(path, Design)
+    return load(path, Design, {"limits": BRIEF_FILE, "points": MATERIAL_FILE})
 
 
 def as_design(design: Design | str | os.PathLike[str]) -> Design:

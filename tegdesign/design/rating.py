@@ -68,6 +68,11 @@ class State:
         """Temperature difference between the junctions."""
         return self.T_hot_junction_K - self.T_cold_junction_K
 
+    @property
+    def face_thermal_resistance_K_per_W(self) -> float | None:
+        """Temperature difference of the outer faces over the heat drawn, all modules together."""
+        return (self.T_hot_face_K - self.T_cold_face_K) / self.heat_in_W if self.heat_in_W > 0 else None
+
 
 @dataclass(frozen=True)
 class Check:
@@ -200,6 +205,13 @@ class Rating:
     def held(self) -> tuple[DataUse, ...]:
         """Uses of data outside their range."""
         return tuple(d for d in self.data if d.below_K > 0 or d.above_K > 0)
+
+    @property
+    def module_height_m(self) -> float:
+        """Distance of the outer plate faces of a module, interfaces left out."""
+        stack = self.design.stack
+        plates = stack.hot.substrate_thickness + stack.cold.substrate_thickness
+        return self.design.module.leg_length + 2 * stack.electrode_thickness + plates
 
     @property
     def assumptions(self) -> tuple[str, ...]:

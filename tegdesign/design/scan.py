@@ -13,6 +13,7 @@ import numpy as np
 from tegdesign.design.design import Design, as_design
 from tegdesign.design.rate import OPEN, SHORT, Ask, solve, solve_all, state_of
 from tegdesign.design.rating import State
+from tegdesign.document import validate
 from tegdesign.errors import DataRangeError, InputError, closest
 from tegdesign.system.boundary import AnyBoundary
 from tegdesign.system.load import AnyLoad, GivenCurrent, Matched
@@ -155,8 +156,6 @@ def map_over(design: Design | str | os.PathLike[str], axes: Mapping[str, Sequenc
     InputError
         Unknown key or impossible value.
     """
-    from pydantic import ValidationError
-
     design = as_design(design)
     if not 1 <= len(axes) <= 2:
         raise InputError(f"a map needs one or two keys, got {len(axes)}")
@@ -165,12 +164,10 @@ def map_over(design: Design | str | os.PathLike[str], axes: Mapping[str, Sequenc
         data = design.model_dump(exclude_none=True)
         for key, value in zip(axes, values, strict=True):
             _put(data, key, value)
-        try:
-            made = Design.model_validate(data)
-        except ValidationError as error:
-            first = error.errors(include_url=False)[0]
-            reason = first.get("ctx", {}).get("reason") or first["msg"]
-            raise InputError(f"map: {' and '.join(map(str, values))} for {' and '.join(axes)}: {reason}") from error
+        made, findings = validate(data, "", Design)
+        if made is None:
+            here = " and ".join(f"{key} = {value}" for key, value in zip(axes, values, strict=True))
+            raise InputError(f"map at {here}: {findings[0].text}")
         designs.append(made)
         x.append(tuple(_number(made, key) for key in axes))
     asks = [_ask(d, "map", d.source, d.sink, d.load) for d in designs]

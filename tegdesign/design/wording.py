@@ -20,7 +20,7 @@ def number(value: float, digits: int = 4) -> str:
 
 
 def amount(value: float | None, unit: str, digits: int = 4) -> str:
-    """Return a number with its unit; W, V, A and ohm take a prefix, ``1`` stands for no unit, None is ``-``."""
+    """Return a number with its unit; W, V, A and ohm take a prefix, ``1`` is no unit, None is ``-``."""
     if value is None or math.isnan(value):
         return "-"
     if unit not in PREFIXED or not math.isfinite(value) or abs(value) < 1e-12:

@@ -27,8 +27,9 @@ def clamping(rating: Rating) -> Iterator[Caution]:
         "The interfaces need a spring-loaded clamp",
         f"{number(low, 3)} N to {number(high, 3)} N on each module",
         f"{PRESSURE[0] / 1e6:.1f} MPa to {PRESSURE[1] / 1e6:.1f} MPa of plate area",
-        "Pressed interfaces keep the resistance assumed here only under even pressure: clamp through springs that "
-        "follow the expansion, on plates thicker than 3 mm and flat within 0.025 mm, tightened in turns." + more,
+        "Pressed interfaces keep the resistance assumed here only under even pressure: clamp through "
+        "springs that follow the expansion, on plates thicker than 3 mm and flat within 0.025 mm, tightened "
+        "in turns." + more,
         PRACTICE,
     )
 
@@ -43,8 +44,8 @@ def slender_legs(rating: Rating) -> Iterator[Caution]:
             "Long slender legs",
             f"{number(slenderness, 3)} times as long as wide "
             f"({millimetres(g.leg_length)} by {millimetres(min(g.leg_side_n, g.leg_side_p))})",
-            f"{number(SLENDER, 3)} times",
-            "Free-standing brittle legs of this shape break in dicing, handling, clamping and shocks: support them with "
-            "a filler or a frame, and count the heat that it carries.",
+            f"{SLENDER:g} times",
+            "Free-standing brittle legs of this shape break in dicing, handling, clamping and shocks: "
+            "support them with a filler or a frame, and count the heat that it carries.",
             PRACTICE,
         )

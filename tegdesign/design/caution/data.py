@@ -32,8 +32,8 @@ def held(rating: Rating) -> Iterator[Caution]:
                 f"Data of the {leg} leg held outside their range",
                 "; ".join(listed),
                 f"{first.material} is known from {kelvin(first.T_first_K)} to {kelvin(first.T_last_K)}",
-                "Outside its data a material was taken to keep its end values; where it really changes, power and heat "
-                "are off. Take a material whose data cover the states, or measure it.",
+                "Outside its data a material was taken to keep its end values; where it really changes, "
+                "power and heat are off. Take a material whose data cover the states, or measure it.",
                 f"material file of {first.material}",
             )
 
@@ -71,8 +71,8 @@ def implausible(rating: Rating) -> Iterator[Caution]:
             "Power above the ceiling of exchangers and plates",
             percent(share),
             percent(CEILING_SHARE),
-            "The ceiling takes constant properties at the mean junction temperature, which may be a few percent off. "
-            "More than that points to material data that change steeply, or to wrong input.",
+            "The ceiling takes constant properties at the mean junction temperature, which may be a few "
+            "percent off. More than that points to material data that change steeply, or to wrong input.",
             f"closed form of constant properties; the {percent(CEILING_SHARE - 1, 0)} of room: {PRACTICE}",
         )
 
@@ -81,12 +81,13 @@ def measured_spread(rating: Rating) -> Iterator[Caution]:
     """Warn when what is asked for leaves less room than laboratories differ in measuring one module."""
     require, rated = rating.design.require, rating.rated
     asked = (
-        ("power", rated.power_W, require.power, "W", SPREAD_POWER),
-        ("efficiency", rated.efficiency, require.efficiency, "1", SPREAD_EFFICIENCY),
+        ("power", rated.power_W, require.power, amount(require.power, "W"), SPREAD_POWER),
+        ("efficiency", rated.efficiency, require.efficiency, percent(require.efficiency), SPREAD_EFFICIENCY),
     )
     rooms = [
-        (f"{name} {percent(value / needed - 1)} above the required {amount(needed, unit)}", spread)
-        for name, value, needed, unit, spread in asked
+        f"{name} {percent(abs(value / needed - 1))} {'above' if value >= needed else 'below'} the required "
+        f"{shown}"
+        for name, value, needed, shown, spread in asked
         if needed is not None and value / needed - 1 < spread
     ]
     if not rooms and (require.power or require.efficiency):
@@ -94,11 +95,11 @@ def measured_spread(rating: Rating) -> Iterator[Caution]:
     yield caution(
         "measured-spread",
         "A test of the module may differ much from these figures",
-        "; ".join(words for words, _ in rooms) or "no required power or efficiency, so no room is set aside",
+        "; ".join(rooms) or "no required power or efficiency, so no room is set aside",
         f"{percent(SPREAD_POWER)} of power, {percent(SPREAD_EFFICIENCY)} of efficiency",
-        "Twelve laboratories that measured the same bismuth telluride modules up to 200 degC differed by standard "
-        f"deviations of up to {percent(SPREAD_POWER)} in power, {percent(SPREAD_HEAT)} in heat and "
-        f"{percent(SPREAD_EFFICIENCY)} in efficiency. Leave room, and agree on the test before buying or selling by "
-        "a figure.",
+        "Twelve laboratories that measured the same bismuth telluride modules up to 200 degC differed by "
+        f"standard deviations of up to {percent(SPREAD_POWER)} in power, {percent(SPREAD_HEAT)} in heat and "
+        f"{percent(SPREAD_EFFICIENCY)} in efficiency. Leave room, and agree on the test before buying or "
+        "selling by a figure.",
         SPREAD_SOURCE,
     )

@@ -25,15 +25,15 @@ def open_circuit_voltage(rating: Rating) -> Iterator[Caution]:
     passed = [(limit, words) for limit, words in DIRECT_VOLTAGE if voltage > limit]
     if passed:
         listed = "; ".join(
-            f"{number(limit)} V for {words} by {number(voltage - limit)} V" for limit, words in passed
+            f"{limit:g} V for {words} by {number(voltage - limit)} V" for limit, words in passed
         )
         yield caution(
             "open-circuit-voltage",
             "Open-circuit voltage above extra-low voltage limits",
             f"{amount(voltage, 'V')} ({state.name})",
-            f"{number(passed[0][0])} V d.c. for {passed[0][1]}",
-            f"The voltage without load exceeds {listed}. A generator cannot be switched off while it is hot: insulate, "
-            "guard and mark the leads, and rate converter and capacitors for it.",
+            f"{passed[0][0]:g} V d.c. for {passed[0][1]}",
+            f"The voltage without load exceeds {listed}. A generator cannot be switched off while it is "
+            "hot: insulate, guard and mark the leads, and rate converter and capacitors for it.",
             "IEC 61201; IEC 60204-1 (PELV); IEC 61558-1:2005, 3.7.16; figures from secondary pages",
         )
 
@@ -46,9 +46,10 @@ def short_circuit(rating: Rating) -> Iterator[Caution]:
             "short-circuit-current",
             "Large current when shorted",
             f"{amount(state.current_A, 'A')} ({state.name})",
-            f"{number(LARGE_CURRENT)} A",
-            "The leads must carry this current without end, a switch or a loose plug that opens it draws an arc, and a "
-            "fuse sized for more never blows: size wires, terminals and switches for direct current of this strength.",
+            f"{LARGE_CURRENT:g} A",
+            "The leads must carry this current without end, a switch or a loose plug that opens it draws an "
+            "arc, and a fuse sized for more never blows: size wires, terminals and switches for direct "
+            "current of this strength.",
             PRACTICE,
         )
 
@@ -66,9 +67,10 @@ def electrode_current(rating: Rating) -> Iterator[Caution]:
             "electrode-current-density",
             "High current density in the electrodes",
             f"{number(density / 1e6)} A/mm2 ({state.name})",
-            f"{number(ELECTRODE_DENSITY / 1e6)} A/mm2",
-            f"Electrodes of {1e3 * thickness:.4g} mm carry {amount(state.current_A / g.modules_in_parallel, 'A')}: take "
-            "thicker metal or more, thinner couples.",
+            f"{ELECTRODE_DENSITY / 1e6:g} A/mm2",
+            f"Electrodes of {1e3 * thickness:.4g} mm carry "
+            f"{amount(state.current_A / g.modules_in_parallel, 'A')}: take thicker metal or more, thinner "
+            "couples.",
             PRACTICE,
         )
 
@@ -82,8 +84,8 @@ def leg_current(rating: Rating) -> Iterator[Caution]:
             "leg-current-density",
             "High steady current density in the legs",
             f"{number(density / 1e6)} A/mm2 (rated)",
-            f"{number(LEG_DENSITY / 1e6)} A/mm2",
-            "Joints and metal films drift under such a current, and leads and straps lose much: look again at the leg "
-            "length, the joints and the metal.",
+            f"{LEG_DENSITY / 1e6:g} A/mm2",
+            "Joints and metal films drift under such a current, and leads and straps lose much: look again "
+            "at the leg length, the joints and the metal.",
             PRACTICE,
         )

@@ -33,8 +33,8 @@ def over_service_limit(rating: Rating) -> Iterator[Caution]:
                     f"Hot junction above the service limit of the {leg} leg, {name}",
                     both(hot),
                     stated(m.service_limit),
-                    f"{m.name} is {kelvin(over)} too hot: it will lose its properties, its joints or its shape. Lower "
-                    "the source, cool better, take shorter legs or another material.",
+                    f"{m.name} is {kelvin(over)} too hot: it will lose its properties, its joints or its "
+                    "shape. Lower the source, cool better, take shorter legs or another material.",
                     f"material file of {m.name}",
                 )
 
@@ -50,7 +50,8 @@ def near_service_limit(rating: Rating) -> Iterator[Caution]:
                 f"Hot junction close to the service limit of the {leg} leg",
                 f"{both(state.T_hot_junction_K)} ({state.name}), {kelvin(room)} left",
                 f"{kelvin(CLOSE)} below {stated(m.service_limit)}",
-                f"{m.name} has {kelvin(room)} left; the source, the films and the joints are not known that well.",
+                f"{m.name} has {kelvin(room)} left; the source, the films and the joints are not known that "
+                "well.",
                 f"material file of {m.name}; the {CLOSE:.0f} K: {PRACTICE}",
             )
 
@@ -64,8 +65,8 @@ def loss_of_load(rating: Rating) -> Iterator[Caution]:
             "Losing the load heats the hot junction",
             f"{kelvin(opened - loaded)} hotter: {celsius(loaded)} rated, {celsius(opened)} open circuit",
             f"{kelvin(RISE)} of rise",
-            "Current carries heat away from the hot junction; when it stops, the junction settles at the higher "
-            "temperature. Judge limits by the open circuit, or keep a dump load that takes over.",
+            "Current carries heat away from the hot junction; when it stops, the junction settles at the "
+            "higher temperature. Judge limits by the open circuit, or keep a dump load that takes over.",
             f"steady states of this rating; the {RISE:.0f} K: {PRACTICE}",
         )
 
@@ -84,8 +85,9 @@ def coolant_loss(rating: Rating) -> Iterator[Caution]:
             "Loss of coolant overheats the module",
             words,
             f"{m.name}: {stated(m.service_limit)}",
-            "Without coolant the hot and the cold side drift to the temperature that the source alone can bring. The "
-            "cold side and its solder bear still less: provide a cut-off of the source or a coolant that cannot fail.",
+            "Without coolant the hot and the cold side drift to the temperature that the source alone can "
+            "bring. The cold side and its solder bear still less: provide a cut-off of the source or a "
+            "coolant that cannot fail.",
             "boundary law of the source of this design",
         )
 
@@ -100,7 +102,8 @@ def air(rating: Rating) -> Iterator[Caution]:
                 f"Oxidation or sublimation of the {leg} leg",
                 f"{both(state.T_hot_junction_K)} ({state.name})",
                 stated(m.air_limit),
-                f"{m.name} is {kelvin(state.T_hot_junction_K - m.air_limit.value)} above the temperature at which it "
-                "oxidises or evaporates unprotected: coat the legs or seal the module with inert gas.",
+                f"{m.name} is {kelvin(state.T_hot_junction_K - m.air_limit.value)} above the temperature at "
+                "which it oxidises or evaporates unprotected: coat the legs or seal the module with inert "
+                "gas.",
                 f"material file of {m.name}",
             )

@@ -22,7 +22,8 @@ def toxic(rating: Rating) -> Iterator[Caution]:
                 f"Hazardous elements in the {leg} leg",
                 ", ".join(tags),
                 "none of these",
-                f"{m.name}: {_sentence(m.hazards)} Cut and grind wet and under extraction, label the module, recycle it.",
+                f"{m.name}: {_sentence(m.hazards)} Cut and grind wet and under extraction, label the "
+                "module, recycle it.",
                 f"material file of {m.name}",
             )
 
@@ -32,12 +33,14 @@ def reactive(rating: Rating) -> Iterator[Caution]:
     for leg, m in zip("np", rating.materials, strict=True):
         tags = [tag for tag in m.hazard_tags if tag in REACTIVE]
         if tags:
+            told = any(tag not in NOT_TOXIC for tag in m.hazard_tags)  # then the caution above has the words
             yield caution(
                 f"reactive-material-{leg}",
                 f"Reactive material in the {leg} leg",
                 ", ".join(tags),
                 "none of these",
-                f"{m.name}: {_sentence(m.hazards)} Keep dust and moisture away from it, in the workshop and in use.",
+                f"{m.name}: {'' if told else _sentence(m.hazards) + ' '}Keep flames and sparks from its "
+                "dust and moisture from its surface, in the workshop and in use.",
                 f"material file of {m.name}",
             )
 

@@ -16,8 +16,8 @@ TOUCH_METAL = (
     (343.15, "contact of less than 1 s"),
 )
 TOUCH_SOURCE = (
-    "IEC 62368-1, table 42, metal, class TS1 at 25 degC ambient, as reproduced by a certification body; it builds on "
-    "ISO 13732-1:2006, which gives burn thresholds and sets no limits"
+    "IEC 62368-1, table 42, metal, class TS1 at 25 degC ambient, as reproduced by a certification body; it "
+    "builds on ISO 13732-1:2006, which gives burn thresholds and sets no limits"
 )
 ROOM = 293.15
 
@@ -37,8 +37,9 @@ def touch(rating: Rating) -> Iterator[Caution]:
                 f"The {side} face burns when touched",
                 f"{both(face)} ({state.name})",
                 f"{celsius(passed[0][0])} for {passed[0][1]}",
-                f"The {side} face exceeds {listed}. Metal joined to it is as hot, and parts nearer to the source are "
-                "hotter: guard or insulate what can be reached, mark it, and let it cool before work.",
+                f"The {side} face exceeds {listed}. Metal joined to it is as hot, and parts nearer to the "
+                "source are hotter: guard or insulate what can be reached, mark it, and let it cool before "
+                "work.",
                 TOUCH_SOURCE,
             )
 
@@ -52,7 +53,8 @@ def condensation(rating: Rating) -> Iterator[Caution]:
             "Water may condense on the cold side",
             f"{both(state.T_cold_face_K)} ({state.name})",
             f"{celsius(ROOM)} room",
-            f"The cold face is {kelvin(ROOM - state.T_cold_face_K)} below a room of 20 degC. Where it is below the dew "
-            "point of the air around it, water bridges the legs and corrodes the joints: seal the module or keep it dry.",
+            f"The cold face is {kelvin(ROOM - state.T_cold_face_K)} below a room of 20 degC. Where it is "
+            "below the dew point of the air around it, water bridges the legs and corrodes the joints: seal "
+            "the module or keep it dry.",
             PRACTICE,
         )
