@@ -15,11 +15,15 @@ def compare(
     brief: Annotated[
         Path,
         typer.Argument(
-            metavar="BRIEF.toml", help="The brief; materials not named mean all of the library.", show_default=False
+            metavar="BRIEF.toml",
+            help="The brief; materials not named mean all of the library.",
+            show_default=False,
         ),
     ],
     top: Annotated[int, typer.Option(min=1, help="Pairs shown in the text table.")] = 20,
-    figure: Annotated[Path | None, typer.Option(metavar="FILE", help="Draw the ranking: .png, .pdf or .svg.")] = None,
+    figure: Annotated[
+        Path | None, typer.Option(metavar="FILE", help="Draw the ranking: .png, .pdf or .svg.")
+    ] = None,
     json: output.JsonOption = False,
     csv: output.CsvOption = False,
     to: output.OutputOption = None,

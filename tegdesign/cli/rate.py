@@ -22,14 +22,19 @@ def rate(
     ] = None,
     cold: Annotated[str | None, typer.Option(metavar="LIST", help="Sink temperatures.")] = None,
     load: Annotated[
-        str | None, typer.Option(metavar="LIST", help='Loads: "matched", "efficiency" or resistances, "2 ohm, 4 ohm".')
+        str | None,
+        typer.Option(metavar="LIST", help='Loads: "matched", "efficiency" or resistances, "2 ohm, 4 ohm".'),
     ] = None,
     current: Annotated[str | None, typer.Option(metavar="LIST", help='Currents, "0 A, 1 A".')] = None,
-    curve: Annotated[bool, typer.Option("--curve", help="V-I and P-I from open towards short circuit.")] = False,
+    curve: Annotated[
+        bool, typer.Option("--curve", help="V-I and P-I from open towards short circuit.")
+    ] = False,
     over: Annotated[
         list[str] | None,
         typer.Option(
-            "--map", metavar="KEY=LIST", help='Vary one or two keys of the design, "module.leg_length=1 mm, 2 mm".'
+            "--map",
+            metavar="KEY=LIST",
+            help='Vary one or two keys of the design, "module.leg_length=1 mm, 2 mm".',
         ),
     ] = None,
     of: Annotated[str, typer.Option(metavar="QUANTITY", help="Quantity shown in a map.")] = "power_W",
@@ -46,10 +51,10 @@ def rate(
 
     \b
     Examples:
-      tegdesign rate examples/wall-module.design.toml
-      tegdesign rate examples/wall-module.design.toml --hot "150 degC, 200 degC" --load "matched, 3 ohm"
-      tegdesign rate examples/wall-module.design.toml --curve --csv -o curve.csv
-      tegdesign rate examples/wall-module.design.toml --map "module.leg_length=1 mm, 2 mm, 3 mm" --of efficiency
+      tegdesign rate plate.toml
+      tegdesign rate plate.toml --hot "150 degC, 200 degC" --load "matched, 3 ohm"
+      tegdesign rate plate.toml --curve --csv -o curve.csv
+      tegdesign rate plate.toml --map "module.leg_length=1 mm, 2 mm, 3 mm" --of efficiency
     """
     form = output.style(json, csv)
     table = bool(hot or cold or load or current)
@@ -114,7 +119,9 @@ def _text(sweep: Sweep, form: output.Style, of: str) -> str:
 def _list(option: str, text: str | None) -> list[str]:
     parts = [part.strip() for part in text.split(",")] if text else []
     if any(not part for part in parts):
-        raise InputError(f"{option}: list '{text}' has an empty place; write values with units, parted by commas")
+        raise InputError(
+            f"{option}: list '{text}' has an empty place; write values with units, parted by commas"
+        )
     return parts
 
 

@@ -28,8 +28,8 @@ def sheet(
 
     \b
     Examples:
-      tegdesign sheet plate.design.toml -o plate.pdf
-      tegdesign sheet plate.design.toml > plate.md
+      tegdesign sheet plate.toml -o plate.pdf
+      tegdesign sheet plate.toml > plate.md
     """
     from tegdesign.sheet import check_suffix, write_sheet
 

@@ -16,7 +16,10 @@ def size(
     to: Annotated[
         Path | None,
         typer.Option(
-            "--output", "-o", metavar="FILE", help="Where the design goes; BRIEF.design.toml in this folder if not given."
+            "--output",
+            "-o",
+            metavar="FILE",
+            help="Where the design goes; BRIEF.design.toml in this folder if not given.",
         ),
     ] = None,
     sheet: Annotated[

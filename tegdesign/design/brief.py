@@ -24,7 +24,6 @@ from tegdesign.system.boundary import AnyBoundary, FixedHeat
 from tegdesign.system.load import AnyLoad, Matched
 from tegdesign.system.model import Part
 
-
 DESIGN_FILE = "a design, not a brief: tegdesign rate and tegdesign sheet take it"
 MATERIAL_FILE = "a material file: tegdesign materials check takes it, and a brief or design names it"
 
@@ -32,8 +31,8 @@ MATERIAL_FILE = "a material file: tegdesign materials check takes it, and a brie
 class Pair(MaterialUse):
     """Materials that may be used: a name, a list of names, or nothing for every one of the library."""
 
-    n: list[str] = []
-    p: list[str] = []
+    n: tuple[str, ...] = ()
+    p: tuple[str, ...] = ()
 
     @field_validator("n", "p", mode="before")
     @classmethod
@@ -64,9 +63,10 @@ class Limits(Part):
         cell = self.leg_side[0] + self.gap
         if min(room) < cell or max(room) < 2 * cell:
             raise ValueError(
-                f"footprint {write(self.footprint[0], 'm', 'mm')} x {write(self.footprint[1], 'm', 'mm')} has no room for "
-                f"one couple: two legs of {write(self.leg_side[0], 'm', 'mm')} with gaps of {write(self.gap, 'm', 'mm')} and "
-                f"an edge of {write(self.edge_margin, 'm', 'mm')}; enlarge the footprint or allow thinner legs"
+                f"footprint {write(self.footprint[0], 'm', 'mm')} x {write(self.footprint[1], 'm', 'mm')} has no "
+                f"room for one couple: two legs of {write(self.leg_side[0], 'm', 'mm')} with gaps of "
+                f"{write(self.gap, 'm', 'mm')} and an edge of {write(self.edge_margin, 'm', 'mm')}; "
+                f"enlarge the footprint or allow thinner legs"
             )
         return self
 

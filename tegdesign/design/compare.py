@@ -96,7 +96,9 @@ class Comparison:
         }
 
 
-def compare(brief: Brief | str | os.PathLike[str], *, progress: Callable[[float], None] = silent) -> Comparison:
+def compare(
+    brief: Brief | str | os.PathLike[str], *, progress: Callable[[float], None] = silent
+) -> Comparison:
     """Rank every allowed pair of materials for a brief; lists left empty mean the whole library.
 
     Raises
@@ -116,7 +118,7 @@ def compare(brief: Brief | str | os.PathLike[str], *, progress: Callable[[float]
 
     def best_of_each_pair(scores: Array) -> NDArray[np.intp]:
         blocks = scores.reshape(len(pairs), len(ways))
-        return np.arange(len(pairs)) * len(ways) + np.argmax(blocks, axis=1)
+        return np.asarray(np.arange(len(pairs)) * len(ways) + np.argmax(blocks, axis=1))
 
     problems, space, u, _ = search(brief, job, problems, best_of_each_pair, progress)
     which = np.arange(len(pairs))
@@ -136,7 +138,7 @@ def compare(brief: Brief | str | os.PathLike[str], *, progress: Callable[[float]
 
 def _allowed(brief: Brief, side: str) -> list[Material]:
     folder = brief.materials.folder
-    wanted: list[str] = getattr(brief.materials, side)
+    wanted: tuple[str, ...] = getattr(brief.materials, side)
     if wanted:
         return [material(name, side, folder) for name in dict.fromkeys(wanted)]
     folders = [folder] if folder else []
@@ -170,7 +172,8 @@ def _impossible(e: Evaluation, k: int) -> str:
 def _broken(limit: Limit, k: int) -> str:
     value, bound = float(limit.value[k]), float(limit.bound[k])
     word = "above" if limit.sense == "most" else "below"
-    return f"{limit.key}, {limit.state}: {value:.4g} {limit.unit} is {abs(value - bound):.3g} {limit.unit} {word} {bound:.4g}"
+    unit = limit.unit
+    return f"{limit.key}, {limit.state}: {value:.4g} {unit} is {abs(value - bound):.3g} {unit} {word} {bound:.4g}"
 
 
 def _tightest(e: Evaluation, k: int) -> str:
@@ -237,4 +240,3 @@ def _compatibility(n: Material, p: Material, hot: float, cold: float) -> float:
 def aimed(rank: Rank, aim: str) -> float:
     """Return the quantity aimed at."""
     return float(getattr(rank, UNIT_OF_AIM[aim]))
-

@@ -17,7 +17,6 @@ from tegdesign.system.boundary import AnyBoundary
 from tegdesign.system.load import AnyLoad, Matched
 from tegdesign.system.model import Part
 
-
 BRIEF_FILE = "a brief, not a design: tegdesign size makes a design of it"
 
 
@@ -49,8 +48,8 @@ class Geometry(Part):
             )
         if self.gap <= 0 or max(self.leg_side_n, self.leg_side_p) >= self.pitch:
             raise ValueError(
-                f"legs of {write(self.leg_side_n, 'm', 'mm')} and {write(self.leg_side_p, 'm', 'mm')} do not fit a pitch of "
-                f"{write(self.pitch, 'm', 'mm')}; widen the pitch"
+                f"legs of {write(self.leg_side_n, 'm', 'mm')} and {write(self.leg_side_p, 'm', 'mm')} do not fit a "
+                f"pitch of {write(self.pitch, 'm', 'mm')}; widen the pitch"
             )
         return self
 
@@ -104,7 +103,7 @@ class Design(Part):
     require: Require = Require()
     stack: Stack = Stack()
     losses: Losses = Losses()
-    assumed: list[str] = []
+    assumed: tuple[str, ...] = ()
 
     @model_validator(mode="before")
     @classmethod
@@ -121,9 +120,7 @@ class Design(Part):
 
     def text(self) -> str:
         """Return the design as the TOML text of its file."""
-        head = (
-            "# tegdesign design. This file alone reproduces every number: tegdesign rate FILE, tegdesign sheet FILE.\n"
-        )
+        head = "# tegdesign design; alone it reproduces every number: tegdesign rate FILE, tegdesign sheet FILE\n"
         return head + to_toml(self.model_dump(exclude_none=True))
 
     def save(self, path: str | os.PathLike[str]) -> None:

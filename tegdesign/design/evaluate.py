@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, fields
 from functools import cached_property
 from typing import Any, NamedTuple
@@ -37,7 +37,7 @@ class Job:
 
 @dataclass(frozen=True)
 class Candidates:
-    """Geometries as arrays (B,): material indices, metres, couples, plate area [m^2], modules in series and parallel."""
+    """Geometries as arrays (B,): material indices, m, couples, plate area [m^2], modules in series and parallel."""
 
     n: NDArray[np.intp]
     p: NDArray[np.intp]
@@ -61,8 +61,10 @@ class Candidates:
 
     def batch(self, job: Job) -> Modules:
         """Return the modules as a batch for the solver."""
-        geometry = {f.name: getattr(self, f.name) for f in fields(self) if f.name not in ("series", "parallel")}
-        return Modules(job.materials, **geometry, **stack_values(job.stack, job.losses))
+        geometry = {
+            f.name: getattr(self, f.name) for f in fields(self) if f.name not in ("series", "parallel")
+        }
+        return Modules(job.materials, **geometry, **dict[str, Any](stack_values(job.stack, job.losses)))
 
 
 class Limit(NamedTuple):
@@ -118,12 +120,13 @@ class Evaluation:
     def objective(self) -> Array:
         """The quantity aimed at: W, 1, W/m^2 or W/kg."""
         power = self.rated.power * self.candidates.modules
-        return {
+        aims: dict[Aim, Callable[[], Array]] = {
             "power": lambda: power,
             "efficiency": lambda: self.rated.efficiency,
             "power per footprint": lambda: self.rated.power / self.candidates.footprint,
             "power per material mass": lambda: power / self.material_mass,
-        }[self.job.aim]()
+        }
+        return aims[self.job.aim]()
 
     @cached_property
     def score(self) -> Array:
@@ -172,25 +175,52 @@ def _limits(e: Evaluation) -> Any:
     ones = np.ones(c.n.size)
     kelvin = 50.0 * ones  # one unit of violation: 50 K
     first, last, service = (
-        np.array(column) for column in zip(*((*m.range, m.service_limit.value) for m in job.materials), strict=True)
+        np.array(column)
+        for column in zip(*((*m.range, m.service_limit.value) for m in job.materials), strict=True)
     )
     for state, point in (("rated", e.rated), ("open circuit", e.opened)):
         hot, cold = point.hot_junction, point.cold_junction
         for leg, index in (("n", c.n), ("p", c.p)):
             yield Limit(f"service limit of the {leg} leg", state, "K", "most", hot, service[index], kelvin)
-            yield Limit(f"last data point of the {leg} leg", state, "K", "most", hot, last[index] + job.hold, kelvin)
-            yield Limit(f"first data point of the {leg} leg", state, "K", "least", cold, first[index] - job.hold, kelvin)
+            yield Limit(
+                f"last data point of the {leg} leg", state, "K", "most", hot, last[index] + job.hold, kelvin
+            )
+            yield Limit(
+                f"first data point of the {leg} leg",
+                state,
+                "K",
+                "least",
+                cold,
+                first[index] - job.hold,
+                kelvin,
+            )
         if require.hot_junction is not None:
             yield Limit("required hot junction", state, "K", "most", hot, require.hot_junction * ones, kelvin)
         if require.cold_junction is not None:
-            yield Limit("required cold junction", state, "K", "most", cold, require.cold_junction * ones, kelvin)
+            yield Limit(
+                "required cold junction", state, "K", "most", cold, require.cold_junction * ones, kelvin
+            )
     power, voltage = e.rated.power * c.modules, e.rated.voltage * c.series
     open_voltage = e.opened.voltage * c.series
     asked: list[tuple[str, str, str, str, Array, float | None]] = [
         ("required power", "rated", "W", "least", power, require.power),
         ("required efficiency", "rated", "1", "least", e.rated.efficiency, require.efficiency),
-        ("lower end of the voltage window", "rated", "V", "least", voltage, (require.voltage or (None, None))[0]),
-        ("upper end of the voltage window", "rated", "V", "most", voltage, (require.voltage or (None, None))[1]),
+        (
+            "lower end of the voltage window",
+            "rated",
+            "V",
+            "least",
+            voltage,
+            (require.voltage or (None, None))[0],
+        ),
+        (
+            "upper end of the voltage window",
+            "rated",
+            "V",
+            "most",
+            voltage,
+            (require.voltage or (None, None))[1],
+        ),
         ("open-circuit voltage", "open circuit", "V", "most", open_voltage, require.open_circuit_voltage),
     ]
     for key, state, unit, sense, value, bound in asked:

@@ -47,7 +47,9 @@ class Stack(Part):
     contact_thermal_resistance: AreaResistance = 0.0
     electrode_thickness: Thickness = 0.3e-3
     electrode_resistivity: Annotated[float, Measure("ohm*m"), Field(ge=0, lt=1e-5)] = COPPER_RESISTIVITY
-    electrode_temperature_coefficient: Annotated[float, Measure("1/K"), Field(ge=0, lt=0.02)] = COPPER_COEFFICIENT
+    electrode_temperature_coefficient: Annotated[float, Measure("1/K"), Field(ge=0, lt=0.02)] = (
+        COPPER_COEFFICIENT
+    )
     electrode_conductivity: Conductivity = 390.0
     filler: str = "air"
     filler_conductivity: Annotated[float, Measure("W/m/K"), Field(ge=0, lt=100)] | None = None
@@ -103,7 +105,9 @@ class Require(Part):
     @model_validator(mode="after")
     def _window(self) -> Require:
         if self.voltage and self.voltage[0] > self.voltage[1]:
-            raise ValueError(f"voltage window is upside down: {self.voltage[0]:g} V is above {self.voltage[1]:g} V")
+            raise ValueError(
+                f"voltage window is upside down: {self.voltage[0]:g} V is above {self.voltage[1]:g} V"
+            )
         return self
 
 

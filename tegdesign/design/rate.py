@@ -72,7 +72,14 @@ def rate(design: Design | str | os.PathLike[str], *, refuse_outside_data: bool =
     ]
     without = [name for name in _SWITCHED if getattr(design.losses, name)]
     asks += [
-        Ask(name, design.source, design.sink, design.load, design.losses.model_copy(update={name: False}), False)
+        Ask(
+            name,
+            design.source,
+            design.sink,
+            design.load,
+            design.losses.model_copy(update={name: False}),
+            False,
+        )
         for name in without
     ]
     modules, point = solve(design, asks)
@@ -166,7 +173,9 @@ def _as_evaluation(design: Design, pair: tuple[Material, Material], point: Opera
         g.leg_length, g.leg_side_n, g.leg_side_p, g.pitch, g.couples, g.width * g.depth, g.modules_in_series,
         g.modules_in_parallel,
     )  # fmt: skip
-    geometry = Candidates(np.zeros(1, dtype=np.intp), np.ones(1, dtype=np.intp), *(np.full(1, float(v)) for v in numbers))
+    geometry = Candidates(
+        np.zeros(1, dtype=np.intp), np.ones(1, dtype=np.intp), *(np.full(1, float(v)) for v in numbers)
+    )
     return Evaluation(job, geometry, point.take([0]), point.take([1]))
 
 
@@ -174,7 +183,13 @@ def _checks(evaluation: Evaluation) -> Iterator[Check]:
     for limit in evaluation.limits:
         passed = bool(limit.violation[0] <= 1e-9)
         yield Check(
-            limit.key, limit.state, float(limit.value[0]), float(limit.bound[0]), limit.unit, limit.sense, passed
+            limit.key,
+            limit.state,
+            float(limit.value[0]),
+            float(limit.bound[0]),
+            limit.unit,
+            limit.sense,
+            passed,
         )
 
 
@@ -195,9 +210,10 @@ def insist_on_data(checks: Sequence[Check], pair: tuple[Material, Material], hol
     side, edge = ("above", last) if worst.sense == "most" else ("below", first)
     need = hold - worst.margin
     raise DataRangeError(
-        f"{worst.state}: junction at {worst.value:.1f} K is {abs(worst.value - edge):.1f} K {side} {edge:.1f} K, the "
-        f"{'last' if side == 'above' else 'first'} measured point of {leg.name}; choose a material whose data cover it, "
-        f"or allow the end values to be held: materials.hold_outside_data = \"{np.ceil(need):.0f} K\" (now {hold:g} K)"
+        f"{worst.state}: junction at {worst.value:.1f} K is {abs(worst.value - edge):.1f} K {side} {edge:.1f} K, "
+        f"the {'last' if side == 'above' else 'first'} measured point of {leg.name}; choose a material "
+        f'whose data cover it, or allow the end values to be held: materials.hold_outside_data = "{np.ceil(need):.0f} K" '
+        f"(now {hold:g} K)"
     )
 
 
@@ -252,8 +268,8 @@ def _ladder(ask: Ask, m: Modules, point: OperatingPoint, k: int, count: int) -> 
     places: list[tuple[str, float]] = []
     heat_in, heat_out = float(point.heat_in[k]), float(point.heat_out[k])
     face = np.array([point.hot_face[k]])
-    for place, t in ask.source.stations(face, np.array([heat_in * count])):
-        places.append((place if place.endswith("source") else f"source {place}", float(t[0])))
+    for place, value in ask.source.stations(face, np.array([heat_in * count])):
+        places.append((place if place.endswith("source") else f"source {place}", float(value[0])))
     t = float(point.hot_face[k])
     places.append(("hot face", t))
     parts = m.thermal_parts("hot")
@@ -265,7 +281,9 @@ def _ladder(ask: Ask, m: Modules, point: OperatingPoint, k: int, count: int) -> 
     for name, resistance in reversed(m.thermal_parts("cold").items()):
         t -= heat_out * float(resistance[0])
         places.append(("cold face" if name == "interface" else f"behind cold {name}", t))
-    for place, value in reversed(ask.sink.stations(np.array([point.cold_face[k]]), np.array([-heat_out * count]))):
+    for place, value in reversed(
+        ask.sink.stations(np.array([point.cold_face[k]]), np.array([-heat_out * count]))
+    ):
         places.append((f"sink {place}", float(value[0])))
     previous = places[0][1]
     for place, t in places:
@@ -281,7 +299,12 @@ def _data(states: Sequence[State], pair: tuple[Material, Material]) -> Iterator[
 
 
 def _losses(
-    states: Sequence[State], modules: Modules, point: OperatingPoint, without: Sequence[str], base: int, count: int
+    states: Sequence[State],
+    modules: Modules,
+    point: OperatingPoint,
+    without: Sequence[str],
+    base: int,
+    count: int,
 ) -> Iterator[Loss]:
     rated = states[0]
     internal = rated.internal_resistance_ohm
@@ -360,7 +383,9 @@ def _ceiling(design: Design, modules: Modules, pair: tuple[Material, Material], 
     external = float((source.resistance + sink.resistance + first.resistance_hot + first.resistance_cold)[0])
     difference = float((source.open_temperature - sink.open_temperature)[0])
     if external == 0:
-        return Ceiling(None, None, "surfaces are held at the junctions, so nothing outside the legs limits the power")
+        return Ceiling(
+            None, None, "surfaces are held at the junctions, so nothing outside the legs limits the power"
+        )
     given = design.source.given_heat
     if given is not None:
         hot, cold = rated.T_hot_junction_K, rated.T_cold_junction_K

@@ -61,7 +61,11 @@ class State:
     @property
     def load_ratio(self) -> float | None:
         """Load resistance over internal resistance."""
-        return None if self.load_resistance_ohm is None else self.load_resistance_ohm / self.internal_resistance_ohm
+        return (
+            None
+            if self.load_resistance_ohm is None
+            else self.load_resistance_ohm / self.internal_resistance_ohm
+        )
 
     @property
     def junction_difference_K(self) -> float:

@@ -142,7 +142,9 @@ def against_hot(
         values = temperatures_K or [float(t) for t in np.linspace(low + 0.25 * (top - low), top, points)]
         sources = [design.source.at(t) for t in values]
         name, unit, x = "T_source", "K", [(float(t),) for t in values]
-    asks = [_ask(design, f"{v[0]:.6g} {unit}", s, design.sink, Matched()) for v, s in zip(x, sources, strict=True)]
+    asks = [
+        _ask(design, f"{v[0]:.6g} {unit}", s, design.sink, Matched()) for v, s in zip(x, sources, strict=True)
+    ]
     return _sweep([design] * len(asks), asks, (name,), (unit,), x, refuse=False)
 
 
@@ -210,14 +212,14 @@ def _sweep(
         raise DataRangeError(
             f"{asks[k].name} at {', '.join(f'{n} {v:.6g} {u}' for n, v, u in zip(names, x[k], units, strict=True))}: "
             f"junctions at {point.hot_junction[k]:.1f} K and {point.cold_junction[k]:.1f} K leave the measured data by "
-            f"{outside[k]:.1f} K; narrow the table or set materials.hold_outside_data = \"{np.ceil(outside[k]):.0f} K\""
+            f'{outside[k]:.1f} K; narrow the table or set materials.hold_outside_data = "{np.ceil(outside[k]):.0f} K"'
         )
-    found = np.flatnonzero(point.converged)  # only states that need not exist can be missing here
+    found = [int(k) for k in np.flatnonzero(point.converged)]  # only states that need not exist can be missing here
     return Sweep(
         names,
         units,
         tuple(tuple(x[k]) for k in found),
-        tuple(state_of(designs[k], asks[k], modules, point, int(k)) for k in found),
+        tuple(state_of(designs[k], asks[k], modules, point, k) for k in found),
         tuple(float(outside[k]) for k in found),
     )
 

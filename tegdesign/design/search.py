@@ -40,6 +40,7 @@ class Space:
     """Unit box of the unknowns of each problem: ln leg length, ln area ratio, leg side, ln couples."""
 
     def __init__(self, brief: Brief, job: Job, problems: Problems) -> None:
+        """Work out what stays the same: room for legs, area ratios to seek around, bounds of the couples."""
         limits = brief.limits
         self.job, self.problems = job, problems
         self.limits = limits
@@ -71,15 +72,28 @@ class Space:
         pitch = np.sqrt(self.width * self.depth / (2 * couples))
         # mean side between the thinnest and the thickest legs that can be cut and fit, the smaller leg decides below
         smallest = self.limits.leg_side[0] * (1 + root) / (2 * np.minimum(root, 1.0))
-        largest = np.minimum(pitch - self.limits.gap, self.limits.leg_side[1] * (1 + root) / (2 * np.maximum(root, 1.0)))
-        largest = np.minimum(largest, (pitch - self.limits.gap / 2) * (1 + root) / (2 * np.maximum(root, 1.0)))
+        largest = np.minimum(
+            pitch - self.limits.gap, self.limits.leg_side[1] * (1 + root) / (2 * np.maximum(root, 1.0))
+        )
+        largest = np.minimum(
+            largest, (pitch - self.limits.gap / 2) * (1 + root) / (2 * np.maximum(root, 1.0))
+        )
         smallest = np.minimum(smallest, largest)
         side = np.exp(np.log(smallest) + u[:, 2] * np.log(largest / smallest))
         side_p = 2 * side / (1 + root)
         part = self.problems.take(which)
         footprint = np.full(which.size, self.footprint)
         return Candidates(
-            part.n, part.p, length, root * side_p, side_p, pitch, couples, footprint, part.series, part.parallel
+            part.n,
+            part.p,
+            length,
+            root * side_p,
+            side_p,
+            pitch,
+            couples,
+            footprint,
+            part.series,
+            part.parallel,
         )
 
     def couples_of(self, u: Array) -> Array:
@@ -89,16 +103,18 @@ class Space:
     def position_of_couples(self, couples: Array) -> Array:
         """Return the position in the box of a number of couples."""
         span = np.log(self.most_couples / self.least_couples)
-        return np.clip(np.log(couples / self.least_couples) / span, 0.0, 1.0) if span > 0 else np.zeros(couples.size)
+        return (
+            np.clip(np.log(couples / self.least_couples) / span, 0.0, 1.0)
+            if span > 0
+            else np.zeros(couples.size)
+        )
 
 
 def buildable(brief: Brief, e: Evaluation) -> Array:
     """Return by how much limits of the workshop are broken (0 when none): thin or slender legs, crowded pitch."""
     c, limits = e.candidates, brief.limits
     thin = np.minimum(c.side_n, c.side_p)
-    over = np.maximum(
-        limits.leg_side[0] / thin - 1, c.leg_length / thin / limits.slenderness - 1
-    )
+    over = np.maximum(limits.leg_side[0] / thin - 1, c.leg_length / thin / limits.slenderness - 1)
     return np.maximum(over, 0.0)
 
 
@@ -109,7 +125,11 @@ def score(brief: Brief, e: Evaluation) -> Array:
 
 
 def search(
-    brief: Brief, job: Job, problems: Problems, keep: Callable[[Array], NDArray[np.intp]], progress: Callable[[float], None]
+    brief: Brief,
+    job: Job,
+    problems: Problems,
+    keep: Callable[[Array], NDArray[np.intp]],
+    progress: Callable[[float], None],
 ) -> tuple[Problems, Space, Array, Array]:
     """Return the problems kept after the scan, their space, best positions (P, 4) and scores (P,).
 

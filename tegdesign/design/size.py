@@ -107,7 +107,9 @@ def size(brief: Brief | str | os.PathLike[str], *, progress: Callable[[float], N
     """
     brief = as_brief(brief)
     names = [_single(brief, side) for side in ("n", "p")]
-    pair = [material(name, side, brief.materials.folder) for name, side in zip(names, ("n", "p"), strict=True)]
+    pair = [
+        material(name, side, brief.materials.folder) for name, side in zip(names, ("n", "p"), strict=True)
+    ]
     job = job_of(brief, pair)
     ways = list(connections(brief))
     count = len(ways)
@@ -146,7 +148,7 @@ def job_of(brief: Brief, materials: list[Any]) -> Job:
 
 
 def _single(brief: Brief, side: str) -> str:
-    names: list[str] = getattr(brief.materials, side)
+    names: tuple[str, ...] = getattr(brief.materials, side)
     if len(names) != 1:
         what = "no" if not names else f"{len(names)}"
         raise InputError(
@@ -159,7 +161,11 @@ def _single(brief: Brief, side: str) -> str:
 def connections(brief: Brief) -> Iterator[tuple[int, int]]:
     """Yield modules in series and in parallel: all in series, and other ways only where a voltage is asked for."""
     most = brief.limits.modules
-    counts = range(1, most + 1) if most <= 8 else sorted({round(most * f) for f in (0.1, 0.2, 0.35, 0.5, 0.65, 0.8, 1)})
+    counts = (
+        range(1, most + 1)
+        if most <= 8
+        else sorted({round(most * f) for f in (0.1, 0.2, 0.35, 0.5, 0.65, 0.8, 1)})
+    )
     for count in counts:
         if count < 1:
             continue
@@ -173,7 +179,9 @@ def connections(brief: Brief) -> Iterator[tuple[int, int]]:
 def _build(brief: Brief, job: Job, space: Space, free: Evaluation) -> Evaluation:
     """Round to workshop steps and an even grid, then try the neighbours once more; all in two batches."""
     count = free.candidates.n.size
-    first = evaluate(job, _join([_rounded(brief, space, free.candidates.take(np.array([k]))) for k in range(count)]))
+    first = evaluate(
+        job, _join([_rounded(brief, space, free.candidates.take(np.array([k]))) for k in range(count)])
+    )
     best = first.candidates.take(np.array([int(np.argmax(score(brief, first)))]))
     second = evaluate(job, _neighbours(brief, space, best))
     k = np.array([int(np.argmax(score(brief, second)))])
@@ -181,7 +189,9 @@ def _build(brief: Brief, job: Job, space: Space, free: Evaluation) -> Evaluation
 
 
 def _join(parts: list[Candidates]) -> Candidates:
-    return Candidates(**{f.name: np.concatenate([getattr(p, f.name) for p in parts]) for f in fields(Candidates)})
+    return Candidates(
+        **{f.name: np.concatenate([getattr(p, f.name) for p in parts]) for f in fields(Candidates)}
+    )
 
 
 def _rounded(brief: Brief, space: Space, free: Candidates) -> Candidates:
@@ -203,8 +213,8 @@ def _rounded(brief: Brief, space: Space, free: Candidates) -> Candidates:
         # the thermal resistance of all legs together is kept: it, not the length, is what the optimum sets
         length = float(free.leg_length[0]) * scale**2 * columns * rows / (2 * couples)
         length = float(np.clip(length, *limits.leg_length))
-        for rounded in product(_both(length, workshop.leg_length_step), *sides):
-            rows_out.append((*rounded, most, columns, rows))
+        for built, sn, sp in product(_both(length, workshop.leg_length_step), *sides):
+            rows_out.append((built, sn, sp, most, columns, rows))
     return _assemble(brief, free, rows_out)
 
 
@@ -214,7 +224,9 @@ def _neighbours(brief: Brief, space: Space, best: Candidates) -> Candidates:
     columns, rows = next(
         (c, 2 * couples // c)
         for c in sorted(range(1, 2 * couples + 1), key=lambda c: abs(c - (space.width + 1e-9) // pitch))
-        if 2 * couples % c == 0 and c * pitch <= space.width + 1e-9 and 2 * couples // c * pitch <= space.depth + 1e-9
+        if 2 * couples % c == 0
+        and c * pitch <= space.width + 1e-9
+        and 2 * couples // c * pitch <= space.depth + 1e-9
     )
     most = min(space.width / columns, space.depth / rows)
     around = (-2, -1, 0, 1, 2)
@@ -236,7 +248,9 @@ def _both(value: float, step: float) -> list[float]:
     return [v for v in (low, low + step) if v > 0]
 
 
-def _assemble(brief: Brief, like: Candidates, rows: list[tuple[float, float, float, float, int, int]]) -> Candidates:
+def _assemble(
+    brief: Brief, like: Candidates, rows: list[tuple[float, float, float, float, int, int]]
+) -> Candidates:
     """Return candidates of given length, sides, widest pitch and grid that keep the limits of the workshop."""
     limits, step = brief.limits, brief.workshop.gap_step
     kept = []
@@ -269,7 +283,7 @@ def _assemble(brief: Brief, like: Candidates, rows: list[tuple[float, float, flo
 
 def _tidy(value: float) -> float:
     """Remove the last-digit noise of adding steps, so that the file shows 1.4 mm."""
-    return float(f"{value:.9g}")
+    return round(1e3 * float(value), 6) / 1e3
 
 
 def _design(brief: Brief, n: str, p: str, c: Candidates) -> Design:
@@ -282,7 +296,10 @@ def _design(brief: Brief, n: str, p: str, c: Candidates) -> Design:
         for k in sorted(range(1, 2 * couples + 1), key=lambda k: -k)
         if 2 * couples % k == 0
         and k * pitch <= width + 1e-9
-        and abs((k * pitch + 2 * limits.edge_margin) * (2 * couples // k * pitch + 2 * limits.edge_margin) - footprint)
+        and abs(
+            (k * pitch + 2 * limits.edge_margin) * (2 * couples // k * pitch + 2 * limits.edge_margin)
+            - footprint
+        )
         < 1e-9 * footprint
     )
     geometry = Geometry.model_construct(
@@ -296,18 +313,26 @@ def _design(brief: Brief, n: str, p: str, c: Candidates) -> Design:
         modules_in_series=round(float(c.series[0])),
         modules_in_parallel=round(float(c.parallel[0])),
     )
-    shared = {name: getattr(brief, name) for name in ("title", "revision", "aim", "source", "sink", "load", "require")}
+    shared = {
+        name: getattr(brief, name)
+        for name in ("title", "revision", "aim", "source", "sink", "load", "require")
+    }
     use = brief.materials
     chosen = Chosen.model_construct(n=n, p=p, hold_outside_data=use.hold_outside_data, folder=use.folder)
     made = Design.model_construct(
-        **shared, materials=chosen, module=geometry, stack=brief.stack, losses=brief.losses, assumed=_assumed(brief)
+        **shared,
+        materials=chosen,
+        module=geometry,
+        stack=brief.stack,
+        losses=brief.losses,
+        assumed=_assumed(brief),
     )
     return Design.model_validate(made.model_dump(exclude_none=True))
 
 
-def _assumed(brief: Brief) -> list[str]:
+def _assumed(brief: Brief) -> tuple[str, ...]:
     """Return the keys of the stack that the brief left at their defaults."""
-    return [key for key in defaults(brief.model_dump(exclude_unset=True), Brief) if key.startswith("stack.")]
+    return tuple(key for key in defaults(brief.model_dump(exclude_unset=True), Brief) if key.startswith("stack."))
 
 
 def _objective(brief: Brief, rating: Rating) -> float:
@@ -328,7 +353,12 @@ def _binding(brief: Brief, design: Design, rating: Rating) -> Iterator[Binding]:
     spans = (
         ("leg length", g.leg_length, limits.leg_length, workshop.leg_length_step),
         ("thinnest leg side", thin, (limits.leg_side[0], np.inf), workshop.leg_side_step),
-        ("thickest leg side", max(g.leg_side_n, g.leg_side_p), (0.0, limits.leg_side[1]), workshop.leg_side_step),
+        (
+            "thickest leg side",
+            max(g.leg_side_n, g.leg_side_p),
+            (0.0, limits.leg_side[1]),
+            workshop.leg_side_step,
+        ),
         ("gap between legs", g.gap, (limits.gap, np.inf), workshop.gap_step),
     )
     for name, value, (low, high), step in spans:

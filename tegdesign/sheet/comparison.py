@@ -19,24 +19,37 @@ def comparison_report(result: Comparison, top: int = 20) -> str:
     """Return the ranking as text, then notes on each pair shown, then who drops out and why."""
     aim = result.brief.aim
     lines = [f"{'PAIRS FOUND' if result.met else 'NO PAIR MEETS THE BRIEF'}: {result.brief.title}"]
-    lines.append(f"{len(result.ranks)} pairs ranked by {aim}, {len(result.dropped)} drop out; free dimensions, not rounded\n")
+    lines.append(
+        f"{len(result.ranks)} pairs ranked by {aim}, {len(result.dropped)} drop out; free dimensions, not rounded\n"
+    )
     rows, notes = [], []
     for k, r in enumerate(result.ranks[:top], 1):
         rows.append(
             [
-                f"{k}" + ("" if r.met else " *"), r.n, r.p, f"{r.power_W:.4g}", f"{100 * r.efficiency:.2f}",
-                f"{r.power_per_footprint_W_per_m2 / 1e4:.3g}", f"{r.power_per_material_mass_W_per_kg / 1e3:.3g}",
-                f"{1e3 * r.material_mass_kg:.3g}", f"{1e3 * r.leg_length_m:.3g}", f"{r.area_ratio_n_to_p:.2f}",
-                f"{r.voltage_V:.3g}", f"{r.T_hot_junction_open_K:.1f}", f"{-100 * r.penalty_of_equal_areas:.1f} %",
+                f"{k}" + ("" if r.met else " *"),
+                r.n,
+                r.p,
+                f"{r.power_W:.4g}",
+                f"{100 * r.efficiency:.2f}",
+                f"{r.power_per_footprint_W_per_m2 / 1e4:.3g}",
+                f"{r.power_per_material_mass_W_per_kg / 1e3:.3g}",
+                f"{1e3 * r.material_mass_kg:.3g}",
+                f"{1e3 * r.leg_length_m:.3g}",
+                f"{r.area_ratio_n_to_p:.2f}",
+                f"{r.voltage_V:.3g}",
+                f"{r.T_hot_junction_open_K:.1f}",
+                f"{-100 * r.penalty_of_equal_areas:.1f} %",
                 f"{r.compatibility_spread:.2f}",
-            ]  # fmt: skip
+            ]
         )
         said = [f"binds: {r.limit}"] if r.limit else []
         said += [f"end values held by {r.K_outside_data:.1f} K"] if r.K_outside_data > 0 else []
         said += [f"hazards: {r.hazards}"] if r.hazards else []
         notes.append(f"  {k}: " + "; ".join(said or ["nothing binds"]))
     lines += [table_text(HEAD, rows, range(3, len(HEAD))), ""]
-    lines.append("equal areas: change of the aim with A_n = A_p; s ratio: largest over smallest compatibility factor")
+    lines.append(
+        "equal areas: change of the aim with A_n = A_p; s ratio: largest over smallest compatibility factor"
+    )
     lines.append("* misses a requirement of the brief") if any("*" in row[0] for row in rows) else None
     lines += ["", "Notes", *notes]
     if len(result.ranks) > top:

@@ -21,7 +21,12 @@ def connection(rating: Rating) -> str:
     inside = f"{g.couples} couples in series in each module" if g.couples > 1 else "one couple in each module"
     if g.modules == 1:
         return inside.replace("in each", "in the one")
-    return f"{inside}; {g.modules_in_series} modules in series x {g.modules_in_parallel} strings in parallel"
+    if g.modules_in_parallel == 1:
+        return f"{inside}; {g.modules} modules in series"
+    if g.modules_in_series == 1:
+        return f"{inside}; {g.modules} modules in parallel"
+    strings = f"{g.modules_in_parallel} strings in parallel"
+    return f"{inside}; {strings} of {g.modules_in_series} modules in series each"
 
 
 def identification(rating: Rating) -> Section:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import io
 from collections.abc import Callable
-from typing import TYPE_CHECKING, TypeVar
+from typing import TYPE_CHECKING, Any, TypeVar
 
 from tegdesign import __version__
 from tegdesign.design.rating import Rating
@@ -20,7 +20,7 @@ if TYPE_CHECKING:
 Data = TypeVar("Data")
 
 SIZES = (7.5, 7.0, 6.5, 6.0, 5.5, 5.0)  # of the text [pt]: the largest that keeps to its pages is taken
-STYLE = {"pdf.fonttype": 42, "font.size": 7.0}
+STYLE: dict[Any, Any] = {"pdf.fonttype": 42, "font.size": 7.0}
 TITLE_SIZES = (15.0, 12.0, 10.0)
 
 
@@ -43,10 +43,10 @@ def sheet_pdf(rating: Rating) -> bytes:
         "Producer": f"tegdesign {__version__}",
         "CreationDate": None,
     }
-    with mpl.rc_context(mpl.rcParamsDefault), mpl.rc_context(STYLE):
-        with PdfPages(stream, metadata=metadata) as file:
-            for page in sheet_pages(rating):
-                file.savefig(page)
+    usual = mpl.rc_context(mpl.rcParamsDefault)  # whatever the user has set for drawings of his own
+    with usual, mpl.rc_context(STYLE), PdfPages(stream, metadata=metadata) as file:
+        for page in sheet_pages(rating):
+            file.savefig(page)
     return stream.getvalue()
 
 

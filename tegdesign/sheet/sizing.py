@@ -35,16 +35,21 @@ def sizing_report(sizing: Sizing) -> str:
     cost = 1 - sizing.objective / sizing.objective_before_rounding
     aim = (
         f"Aim: {sizing.brief.aim}, {sizing.objective * factor:.5g} {unit}; "
-        f"{sizing.objective_before_rounding * factor:.5g} {unit} before rounding to workshop steps ({-100 * cost:+.2f} %)"
+        f"{sizing.objective_before_rounding * factor:.5g} {unit} before rounding to workshop steps "
+        f"({-100 * cost:+.2f} %)"
     )
     binding = "Nothing binds: the optimum lies inside all limits."
     if sizing.binding:
         rows = [[b.name, b.value, b.limit] for b in sizing.binding]
-        binding = "What binds (more would need this to give way)\n" + table_text(["limit", "here", "bound"], rows)
+        binding = "What binds (more would need this to give way)\n" + table_text(
+            ["limit", "here", "bound"], rows
+        )
     parts = [verdict(sizing), aim, binding, rating_report(sizing.rating).rstrip()]
     if sizing.assumed_limits:
         rows = [[key, _value(value)] for key, value in sizing.assumed_limits.items()]
-        parts.append("LIMITS AND STEPS OF THE BRIEF TAKEN FROM DEFAULTS\n" + table_text(["key", "value"], rows))
+        parts.append(
+            "LIMITS AND STEPS OF THE BRIEF TAKEN FROM DEFAULTS\n" + table_text(["key", "value"], rows)
+        )
     return "\n\n".join(parts)
 
 

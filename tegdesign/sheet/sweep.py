@@ -5,10 +5,10 @@ from __future__ import annotations
 import os
 from typing import TYPE_CHECKING
 
-from tegdesign.sheet.table import table_text
 from tegdesign.design.design import Design
 from tegdesign.design.scan import Sweep
 from tegdesign.sheet.drawing import check_ending, save_drawing
+from tegdesign.sheet.table import table_text
 
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
@@ -36,7 +36,9 @@ def sweep_table(sweep: Sweep, of: str = "") -> str:
     if of and len(sweep.x_name) == 2:
         return _cross_table(sweep, of)
     shown = [*COLUMNS] if not of or of in dict(COLUMNS) else [*COLUMNS, (of, of)]
-    names = [f"{n.replace('_', ' ')} [{u}]" if u else n for n, u in zip(sweep.x_name, sweep.x_unit, strict=True)]
+    names = [
+        f"{n.replace('_', ' ')} [{u}]" if u else n for n, u in zip(sweep.x_name, sweep.x_unit, strict=True)
+    ]
     rows = [
         [*(f"{v:.6g}" for v in x), *(_text(getattr(state, key), key) for key, _ in shown)]
         for x, state in zip(sweep.x, sweep.states, strict=True)

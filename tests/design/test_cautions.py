@@ -64,7 +64,10 @@ def test_ids_are_unique_in_kebab_case_and_all_defer_to_local_codes(base):
     assert len({c.id for c in listed}) == len(listed) > 8
     for c in listed:
         assert c.id == c.id.lower().replace(" ", "-").replace("_", "-")
-        assert c.title and c.value and c.limit and c.source
+        assert c.title
+        assert c.value
+        assert c.limit
+        assert c.source
         assert c.text.endswith("Local codes and licensed practice decide.")
 
 
@@ -72,7 +75,7 @@ def test_every_rule_is_listed():
     assert len(set(RULES)) == len(RULES) == 20
 
 
-# IEC 62368-1 table 42, metal, TS1, 25 degC ambient: 48, 51, 60 and 70 degC (321.15, 324.15, 333.15, 343.15 K).
+# IEC 62368-1 table 42, metal, TS1, 25 degC air: 48, 51, 60 and 70 degC (321.15, 324.15, 333.15, 343.15 K).
 @pytest.mark.parametrize("side", ["hot", "cold"])
 @pytest.mark.parametrize(
     ("face", "exceeded"), [(321.0, 0), (322.15, 1), (325.15, 2), (334.15, 3), (344.15, 4)]
@@ -89,7 +92,8 @@ def test_touchable_face(base, side, face, exceeded):
         passed = ("48.0 degC", "51.0 degC", "60.0 degC", "70.0 degC")[exceeded - 1]
         assert f"{passed} for contact of" in caution.text
         assert "by 1.0 K" in caution.text  # over the highest limit passed
-        assert "IEC 62368-1" in caution.source and "ISO 13732-1" in caution.source
+        assert "IEC 62368-1" in caution.source
+        assert "ISO 13732-1" in caution.source
 
 
 def test_touchable_face_names_the_hottest_state(base):

@@ -24,8 +24,8 @@ PLAIN = {
 }
 # many modules, many cautions, limits missed, a long title with marks that drawing programs take for formulae
 HEAVY = PLAIN | {
-    "title": "Generator on the exhaust duct of the second glass melting furnace, north hall, with $battery$ buffer_x "
-    "and a_very_long_word_" + "without_end_" * 12,
+    "title": "Generator on the exhaust duct of the second glass melting furnace, north hall, with $battery$ "
+    "buffer_x and a_very_long_word_" + "without_end_" * 12,
     "revision": "draft 17, after the meeting of the thermal group, not yet released for manufacture",
     "source": {
         "kind": "stream",

@@ -1,5 +1,7 @@
 """Drawings to scale and graphs: what they show, labels, units."""
 
+import itertools
+
 import numpy as np
 import pytest
 from matplotlib.figure import Figure
@@ -43,7 +45,7 @@ def test_path_visits_neighbours_in_turn(ratings):
         assert len(set(order)) == len(order) == 2 * g.couples
         kinds = [plan.polarity(cell) for cell in order]
         assert kinds == ["n", "p"] * g.couples
-        for (a, b), (c, d) in zip(order[:-1], order[1:], strict=True):
+        for (a, b), (c, d) in itertools.pairwise(order):
             assert abs(a - c) + abs(b - d) == 1
 
 
@@ -65,7 +67,7 @@ def test_plan_is_to_scale(ratings, name):
         assert legs[:, 2].max() <= 1e3 * g.width + 1e-9
         assert legs[:, 3].max() <= 1e3 * g.depth + 1e-9
     assert_allclose(extents(axes, plan.CERAMIC)[0], [0, 0, 1e3 * g.width, 1e3 * g.depth], rtol=1e-9)
-    # an electrode reaches from the outer edge of the n leg to that of the p leg, one a couple, two halves each
+    # an electrode reaches from the outer edge of the n leg to that of the p leg, in two halves
     strips = extents(axes, plan.METAL)
     assert len(strips) == 2 * g.couples
     reach = 1e6 * np.array([s * (s + g.gap / 2) for s in (g.leg_side_n, g.leg_side_p)])

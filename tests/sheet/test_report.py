@@ -10,6 +10,7 @@ from markdown_it import MarkdownIt
 
 import tegdesign
 from tegdesign.design.wording import amount, celsius, percent
+from tegdesign.sheet.description import connection
 from tegdesign.sheet.markdown import plain as escaped
 from tegdesign.sheet.markdown import sheet_markdown
 from tegdesign.sheet.section import table
@@ -70,6 +71,23 @@ def test_wide_tables_are_folded_in_their_words():
     assert " ".join(line[42:].strip() for line in lines[2:]) == ("seven words and more of them " * 5).strip()
 
 
+@pytest.mark.parametrize(
+    ("series", "parallel", "words"),
+    [
+        (1, 1, "128 couples in series in the one module"),
+        (4, 1, "128 couples in series in each module; 4 modules in series"),
+        (1, 3, "128 couples in series in each module; 3 modules in parallel"),
+        (4, 3, "each module; 3 strings in parallel of 4 modules in series each"),
+    ],
+)
+def test_connection(plain, series, parallel, words):
+    module = plain.design.module.model_copy(
+        update={"modules_in_series": series, "modules_in_parallel": parallel}
+    )
+    rating = replace(plain, design=plain.design.model_copy(update={"module": module}))
+    assert connection(rating).endswith(words)
+
+
 def test_key_numbers(plain):
     report, s = rating_report(plain), plain.rated
     assert value(report, "power ") == amount(s.power_W, "W")
@@ -93,7 +111,8 @@ def test_shares_of_the_ladder_add_up_to_all(ratings):
 def test_fixed_heat_counts_no_fall_from_its_ambient(ratings):
     lines = rating_report(ratings["tiny"]).split("SINK, RATED\n")[1].splitlines()
     ambient, face = lines[2], lines[3]
-    assert "ambient of the source" in ambient and "hot face" in face
+    assert "ambient of the source" in ambient
+    assert "hot face" in face
     assert ambient.split()[-1] == face.split()[-1] == "K"  # no drop and no share behind the temperature
 
 
@@ -161,7 +180,8 @@ def test_markdown_is_what_it_says(rating):
     assert amount(rating.rated.power_W, "W") in shown
     assert "no conformity with any standard is claimed" in shown
     for m in rating.materials:
-        assert m.doi in shown and m.composition in shown
+        assert m.doi in shown
+        assert m.composition in shown
     # every line of a table has as many cells as its head
     for block in text.split("\n\n"):
         if block.startswith("|"):
@@ -173,5 +193,8 @@ def test_titles_with_marks(plain, title):
     rating = replace(plain, design=plain.design.model_copy(update={"title": title}))
     first = sheet_markdown(rating).splitlines()[0]
     html = MarkdownIt("commonmark").render(first)
-    assert "<strong>" not in html and "<em>" not in html and "<b>" not in html and "<code>" not in html
+    assert "<strong>" not in html
+    assert "<em>" not in html
+    assert "<b>" not in html
+    assert "<code>" not in html
     assert rating_report(rating).splitlines()[0] == f"{flat(title)}, revision B2"

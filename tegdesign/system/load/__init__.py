@@ -14,4 +14,14 @@ from tegdesign.system.load.resistance import Resistance
 
 AnyLoad = Annotated[Matched | BestEfficiency | Resistance | GivenCurrent, Field(discriminator="kind")]
 
-__all__ = ["AnyLoad", "BestEfficiency", "GivenCurrent", "Load", "LoadLaw", "Matched", "MixedLoads", "Resistance", "mixed"]
+__all__ = [
+    "AnyLoad",
+    "BestEfficiency",
+    "GivenCurrent",
+    "Load",
+    "LoadLaw",
+    "Matched",
+    "MixedLoads",
+    "Resistance",
+    "mixed",
+]

@@ -7,7 +7,7 @@ from collections.abc import Callable, Sequence
 from typing import Any, NamedTuple
 
 import numpy as np
-from numpy.typing import ArrayLike
+from numpy.typing import ArrayLike, NDArray
 
 from tegdesign.material.curve import Array
 from tegdesign.system.model import Part
@@ -48,7 +48,7 @@ class MixedLoads(NamedTuple):
     """Loads of several kinds in one batch: each design has its own."""
 
     laws: tuple[LoadLaw, ...]
-    which: Array
+    which: NDArray[np.intp]
 
     def take(self, chosen: Any) -> MixedLoads:
         """Return the laws of the designs ``chosen``."""
