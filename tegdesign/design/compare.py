@@ -57,10 +57,11 @@ class Rank:
 
 @dataclass(frozen=True)
 class Dropped:
-    """A pair that cannot serve the brief: the limit that no geometry can hold, and by how much it fails."""
+    """A pair that cannot serve the brief: the material and the limit that no geometry can hold, and by how much."""
 
     n: str
     p: str
+    culprit: str
     reason: str
 
 
@@ -130,7 +131,8 @@ def compare(
     for k in order:
         reason = _impossible(best, int(k))
         if reason:
-            dropped.append(Dropped(materials[problems.n[k]].name, materials[problems.p[k]].name, reason))
+            n, p = materials[problems.n[k]].name, materials[problems.p[k]].name
+            dropped.append(Dropped(n, p, p if "p leg" in reason else n if "n leg" in reason else "", reason))
         else:
             ranks.append(_rank(best, equal, materials, int(k)))
     return Comparison(brief, tuple(ranks), tuple(dropped))
@@ -172,8 +174,8 @@ def _impossible(e: Evaluation, k: int) -> str:
 def _broken(limit: Limit, k: int) -> str:
     value, bound = float(limit.value[k]), float(limit.bound[k])
     word = "above" if limit.sense == "most" else "below"
-    unit = limit.unit
-    return f"{limit.key}, {limit.state}: {value:.4g} {unit} is {abs(value - bound):.3g} {unit} {word} {bound:.4g}"
+    unit, miss = limit.unit, abs(value - bound)
+    return f"{limit.key}, {limit.state}: {value:.4g} {unit} is {miss:.3g} {unit} {word} {bound:.4g} {unit}"
 
 
 def _tightest(e: Evaluation, k: int) -> str:

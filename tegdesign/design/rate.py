@@ -212,8 +212,8 @@ def insist_on_data(checks: Sequence[Check], pair: tuple[Material, Material], hol
     raise DataRangeError(
         f"{worst.state}: junction at {worst.value:.1f} K is {abs(worst.value - edge):.1f} K {side} {edge:.1f} K, "
         f"the {'last' if side == 'above' else 'first'} measured point of {leg.name}; choose a material "
-        f'whose data cover it, or allow the end values to be held: materials.hold_outside_data = "{np.ceil(need):.0f} K" '
-        f"(now {hold:g} K)"
+        f'whose data cover it, or allow the end values to be held: materials.hold_outside_data = '
+        f'"{np.ceil(need):.0f} K" (now {hold:g} K)'
     )
 
 

@@ -60,8 +60,15 @@ def comparison_report(result: Comparison, top: int = 20) -> str:
 
 
 def _reasons(result: Comparison) -> list[str]:
-    """Return one line for each pair that drops out, those of one n material together."""
-    return [f"  {d.n} / {d.p}: {d.reason}" for d in sorted(result.dropped, key=lambda d: (d.n, d.p))]
+    """Return one line for each material that makes pairs drop out, with the partner it comes nearest with."""
+    lines = []
+    for culprit in dict.fromkeys(d.culprit for d in result.dropped):  # in order of score, so the nearest comes first
+        pairs = [d for d in result.dropped if d.culprit == culprit]
+        first = pairs[0]
+        partner = first.p if first.n == culprit else first.n
+        who = f"{culprit} (with {len(pairs)} partners; nearest with {partner})" if culprit else f"{first.n} / {first.p}"
+        lines.append(f"  {who}: {first.reason}")
+    return lines
 
 
 def draw_comparison(result: Comparison, path: str | os.PathLike[str], most: int = 25) -> None:
@@ -83,7 +90,7 @@ def draw_comparison(result: Comparison, path: str | os.PathLike[str], most: int 
         linewidth=0.6,
     )
     bars.set_yticks(places, [f"{r.n} / {r.p}" for r in ranks], fontsize=7.5)
-    bars.invert_yaxis()
+    bars.set_ylim(len(ranks) - 0.4, -0.6)
     bars.set_xlabel(f"{result.brief.aim} [{unit}]")
     dots.plot([1e3 * r.leg_length_m for r in ranks], places, "o", color="black", markersize=4)
     dots.set(xlabel="best leg length [mm]", xlim=(0, None))
