@@ -109,6 +109,11 @@ class Evaluation:
         return np.where(solved, worst, np.inf)
 
     @cached_property
+    def shortfall(self) -> Array:
+        """Sum of all violations of each candidate: a missed limit is no licence to miss others as well."""
+        return np.asarray(sum(np.maximum(limit.violation, 0.0) for limit in self.limits))
+
+    @cached_property
     def material_mass(self) -> Array:
         """Mass of leg material in all modules [kg]."""
         c = self.candidates
@@ -133,8 +138,8 @@ class Evaluation:
         """Logarithm of the objective, far below any of them where a limit is broken, -inf without a solution."""
         with np.errstate(divide="ignore", invalid="ignore"):
             good = np.log(np.maximum(self.objective, 1e-300))
-        broken = np.maximum(self.violation, 0.0)
-        score = np.where(broken > 1e-9, -1e4 * (1 + np.minimum(broken, 1e6)) + 1e-3 * good, good)
+        missed = np.minimum(np.nan_to_num(self.shortfall, nan=np.inf), 1e6)
+        score = np.where(missed > 1e-9, -1e4 * (1 + missed) + 1e-3 * good, good)
         return np.where(np.isfinite(self.violation), score, -np.inf)
 
 
