@@ -107,7 +107,9 @@ def load_ratio_of_most_power(figure_of_merit_zt: ArrayLike, external_over_intern
     return np.asarray(1 + zt / (ratio + 1))
 
 
-def power_ceiling(figure_of_merit: ArrayLike, total_difference: ArrayLike, mean: ArrayLike, external: ArrayLike) -> Array:
+def power_ceiling(
+    figure_of_merit: ArrayLike, total_difference: ArrayLike, mean: ArrayLike, external: ArrayLike
+) -> Array:
     """Return Z dT^2 / (4 R_ext (1 + m)^2) [W], m = sqrt(1 + Z T): what exchangers of R_ext [K/W] let any legs give.
 
     Constant properties, small differences; free leg length and load. Apertet et al. 2012, arXiv 1108.6164.
@@ -128,7 +130,8 @@ def power_with_contacts(
     """Return alpha^2 A dT^2 / {2 rho (l + n) (1 + 2 w l_c / l)^2} [W] of a couple of equal legs, matched load.
 
     ``seebeck`` per leg; ``electrical`` n = 2 rho_contact / rho [m]; ``thermal`` w l_c, contact layer thickness times
-    kappa / kappa_contact [m]. Peltier heat is left out of the contact drop. Min and Rowe 1992, J. Power Sources 38, 253.
+    kappa / kappa_contact [m]. Peltier heat is left out of the contact drop. Min and Rowe 1992, J. Power Sources 38,
+    253.
     """
     s, rho, a, length_, d, n, wl = (
         np.asarray(v, dtype=float) for v in (seebeck, resistivity, area, length, difference, electrical, thermal)
@@ -137,9 +140,17 @@ def power_with_contacts(
 
 
 def efficiency_with_contacts(
-    figure_of_merit: ArrayLike, hot: ArrayLike, cold: ArrayLike, length: ArrayLike, electrical: ArrayLike, thermal: ArrayLike
+    figure_of_merit: ArrayLike,
+    hot: ArrayLike,
+    cold: ArrayLike,
+    length: ArrayLike,
+    electrical: ArrayLike,
+    thermal: ArrayLike,
 ) -> Array:
-    """Return the efficiency beside ``power_with_contacts``, same symbols (Rowe and Min 1998, J. Power Sources 73, 193)."""
+    """Return the efficiency beside ``power_with_contacts``, same symbols.
+
+    Rowe and Min 1998, J. Power Sources 73, 193.
+    """
     z, h, c, length_, n, wl = (
         np.asarray(v, dtype=float) for v in (figure_of_merit, hot, cold, length, electrical, thermal)
     )
@@ -149,14 +160,16 @@ def efficiency_with_contacts(
 
 
 def engineering_figure_of_merit(
-    seebeck_integral: ArrayLike, resistivity_integral: ArrayLike, conductivity_integral: ArrayLike, difference: ArrayLike
+    seebeck_integral: ArrayLike,
+    resistivity_integral: ArrayLike,
+    conductivity_integral: ArrayLike,
+    difference: ArrayLike,
 ) -> tuple[Array, Array]:
     """Return (ZT)_eng and (PF)_eng [W/m/K] from integrals over temperature of S [V], rho [ohm m K], kappa [W/m].
 
     Kim et al. 2015, PNAS 112, 8205, doi 10.1073/pnas.1510231112.
     """
     e, r, k, d = (
-        np.asarray(v, dtype=float)
-        for v in (seebeck_integral, resistivity_integral, conductivity_integral, difference)
+        np.asarray(v, dtype=float) for v in (seebeck_integral, resistivity_integral, conductivity_integral, difference)
     )
     return np.asarray(e**2 / (r * k) * d), np.asarray(e**2 / r)

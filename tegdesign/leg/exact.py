@@ -117,8 +117,7 @@ def solve_leg(
     panels = prepare(material, points, subdivide)
     order, groups = _group(panels, lower, upper)
     parts = [
-        _solve_chunk(material, panels, lower[g], upper[g], scaled[g], tolerance, max_iterations, slopes)
-        for g in groups
+        _solve_chunk(material, panels, lower[g], upper[g], scaled[g], tolerance, max_iterations, slopes) for g in groups
     ]
     raw = _gather(parts, order)
     result = _reflect(raw, scaled, mirrored, shape)
@@ -251,6 +250,15 @@ def _solve_on(
         sound = state.settled & (state.misfit < max(_MISFIT, tolerance)) & (at_cold > 0) & (at_hot > 0)
         by_flow, by_resistance = slopes_of(nodes, j, state, at_hot, at_cold) if slopes else (None, None)
     return LegSolution(
-        state.flow, state.flow + power, power, voltage, state.resistance, hot.seebeck, cold.seebeck, sound,
-        state.iterations, by_flow, by_resistance,
+        state.flow,
+        state.flow + power,
+        power,
+        voltage,
+        state.resistance,
+        hot.seebeck,
+        cold.seebeck,
+        sound,
+        state.iterations,
+        by_flow,
+        by_resistance,
     )

@@ -100,7 +100,7 @@ def solve_nodes(nodes: Nodes, j: Array, tolerance: float, max_iterations: int, s
             v *= step / 2
             u -= v
         end = rest[-2] + constant
-        change = (np.abs(step) + np.abs(end - last)) / square
+        change = (np.abs(step) + np.abs(end - last)) / (2 * square)  # of H
         settled = change * np.maximum(np.minimum(change / before, 1.0), _BEST_GAIN) < tolerance
         if iteration == max_iterations or (settled | ~np.isfinite(change)).all():
             break

@@ -116,8 +116,7 @@ def own_nodes(panels: Panels, lower: Array, upper: Array) -> Nodes:
     cuts = np.concatenate([np.clip(edges[:, None], lower, upper), upper - (upper - lower) * shrink])
     cuts.sort(axis=0)
     width = np.diff(cuts, axis=0)
-    keep = (width > 0).any(axis=1)
-    keep[-1] = True  # equal ends: found unsolvable later
+    keep = np.append((width[:-1] > 0).any(axis=1), True)  # the last even for equal ends, found unsolvable later
     start, width = cuts[:-1][keep], width[keep]
     panel = np.clip(edges.searchsorted(start + width / 2, side="right") - 1, 0, edges.size - 2)
     c = panels.pick(panel)[:, :, None]

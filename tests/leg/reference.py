@@ -57,7 +57,7 @@ class Properties:
 def conduction_start(get: Properties, hot: float, cold: float, size: int) -> tuple[Array, Array]:
     """Return mesh and values of the leg without current, by the trapezoidal rule."""
     t = np.linspace(hot, cold, size)
-    s, rho, kappa = get(t)
+    _, rho, kappa = get(t)
     steps = (kappa[1:] + kappa[:-1]) / 2 * -np.diff(t)
     x = np.concatenate([[0.0], np.cumsum(steps)])
     resistance = np.concatenate([[0.0], np.cumsum(steps * (rho[1:] + rho[:-1]) / 2)])

@@ -390,4 +390,6 @@ def test_leg_length_with_contact_layers():
     assert np.argmax(power) == 1
     assert np.all(np.diff(efficiency) > 0)
     # without contacts it is the plain closed form
-    assert_allclose(efficiency_with_contacts(z, 400.0, 300.0, 1e-3, 0.0, 0.0), matched_efficiency(z, 400.0, 300.0), rtol=1e-13)
+    assert_allclose(
+        efficiency_with_contacts(z, 400.0, 300.0, 1e-3, 0.0, 0.0), matched_efficiency(z, 400.0, 300.0), rtol=1e-13
+    )

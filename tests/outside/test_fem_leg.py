@@ -86,7 +86,11 @@ def thermoelectric_leg(material, hot, cold, length, width, voltage):
 
 @pytest.mark.parametrize(
     ("name", "hot", "cold", "share"),
-    [("skutterudite-p", 780.0, 320.0, 0.5), ("bismuth-telluride-n-se0.3", 550.0, 330.0, 0.3), ("lead-telluride-p", 850.0, 340.0, 0.6)],
+    [
+        ("skutterudite-p", 780.0, 320.0, 0.5),
+        ("bismuth-telluride-n-se0.3", 550.0, 330.0, 0.3),
+        ("lead-telluride-p", 850.0, 340.0, 0.6),
+    ],
 )
 def test_leg_by_finite_elements(name, hot, cold, share):
     # asked 1e-4, found 1e-9 in power and heats
@@ -112,7 +116,12 @@ def joined(*pieces):
 
 @pytest.mark.parametrize(
     ("side", "length", "gap", "copper"),
-    [(1.4e-3, 1.6e-3, 0.6e-3, 0.3e-3), (1.4e-3, 0.6e-3, 0.6e-3, 0.3e-3), (1.0e-3, 1.0e-3, 0.4e-3, 0.1e-3), (2.0e-3, 1.5e-3, 1.0e-3, 0.5e-3)],
+    [
+        (1.4e-3, 1.6e-3, 0.6e-3, 0.3e-3),
+        (1.4e-3, 0.6e-3, 0.6e-3, 0.3e-3),
+        (1.0e-3, 1.0e-3, 0.4e-3, 0.1e-3),
+        (2.0e-3, 1.5e-3, 1.0e-3, 0.5e-3),
+    ],
 )
 def test_electrode_of_a_leg_by_finite_elements(side, length, gap, copper):
     # electrodes on top to the right and below to the left, cut in the middle of the gaps; 2-D, depth = side.
@@ -173,7 +182,12 @@ def plate_resistance(side, gap, thickness, conductivity, copper):
 
 @pytest.mark.parametrize(
     ("thickness", "conductivity", "gap", "tolerance"),
-    [(1.0e-3, 25.0, 0.6e-3, 0.15), (0.64e-3, 25.0, 0.6e-3, 0.15), (1.0e-3, 25.0, 1.4e-3, 0.15), (0.64e-3, 170.0, 0.6e-3, 0.25)],
+    [
+        (1.0e-3, 25.0, 0.6e-3, 0.15),
+        (0.64e-3, 25.0, 0.6e-3, 0.15),
+        (1.0e-3, 25.0, 1.4e-3, 0.15),
+        (0.64e-3, 170.0, 0.6e-3, 0.25),
+    ],
 )
 def test_spreading_into_a_plate_by_finite_elements(thickness, conductivity, gap, tolerance):
     # found +11 %, +10 %, -4 %, -22 %. In the last, copper is hardly better than the plate and no longer at one
