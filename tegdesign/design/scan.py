@@ -11,8 +11,8 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from tegdesign.design.design import Design, as_design
-from tegdesign.design.rate import OPEN, SHORT, Ask, solve, solve_all, state_of
 from tegdesign.design.rating import State
+from tegdesign.design.state import OPEN, SHORT, Ask, solve, solve_all, state_of
 from tegdesign.document import validate
 from tegdesign.errors import DataRangeError, InputError, closest
 from tegdesign.system.boundary import AnyBoundary
