@@ -2,6 +2,7 @@
 
 import ast
 import os
+import shutil
 import subprocess
 import sys
 import tomllib
@@ -54,6 +55,12 @@ def test_every_room_is_known():
     assert found == set(ROOMS)
 
 
+def test_the_book_tells_of_every_room_in_this_order():
+    lines = (HERE / "DEVELOPERS.md").read_text().splitlines()
+    told = [line.split("`")[1].rstrip("/").removesuffix(".py") for line in lines if line.startswith("| `")]
+    assert tuple(reversed(told[: len(ROOMS)])) == ROOMS
+
+
 @pytest.mark.parametrize("path", FILES, ids=name_of)
 def test_imports_go_down(path):
     own = room(name_of(path))
@@ -83,6 +90,20 @@ def test_dependencies_are_those_that_are_imported():
     assert {entry.split(">")[0] for entry in project["dependencies"]} == used
 
 
+# Where the name to import is not the name to install.
+INSTALLED_AS = {"skfem": "scikit-fem", "markdown_it": "markdown-it-py"}
+
+
+def test_tests_import_only_what_the_test_extra_brings():
+    paths = sorted((HERE / "tests").rglob("*.py"))
+    own = {path.stem for path in paths}
+    used = {module.split(".")[0] for path in paths for _, module in imports(path)}
+    used -= {*sys.stdlib_module_names, "tegdesign", *own}
+    project = tomllib.loads((HERE / "pyproject.toml").read_text())["project"]
+    entries = [*project["dependencies"], *project["optional-dependencies"]["test"]]
+    assert {INSTALLED_AS.get(name, name) for name in used} <= {entry.split(">")[0] for entry in entries}
+
+
 def modules_after(code):
     done = subprocess.run(
         [sys.executable, "-c", f"{code}\nimport sys; print(' '.join(sorted(sys.modules)))"],
@@ -100,14 +121,13 @@ def test_starting_is_light(code):
     assert heavy == []
 
 
+@pytest.mark.skipif(
+    not (HERE / ".git").exists() or shutil.which("git") is None, reason="only git knows what is in the repository"
+)
 def test_the_top_level_holds_nothing_more():
-    """Dot-files aside; what git ignores does not count."""
+    """Dot-files aside."""
+    command = ["git", "-C", str(HERE), "ls-files", "--cached", "--others", "--exclude-standard"]
+    listed = subprocess.run(command, capture_output=True, text=True, check=True).stdout.splitlines()
+    found = {name.split("/")[0] for name in listed if not name.startswith(".")}
     allowed = {"README.md", "DEVELOPERS.md", "pyproject.toml", "tegdesign", "materials", "tests", "examples"}
-    ignored = {line.strip("/") for line in _ignored()}
-    found = {path.name for path in HERE.iterdir() if not path.name.startswith(".")}
-    assert found - ignored == allowed
-
-
-def _ignored():
-    path = HERE / ".gitignore"
-    return path.read_text().splitlines() if path.exists() else []
+    assert found - {"plate.toml", "plate.pdf"} == allowed  # what the first line of the README leaves

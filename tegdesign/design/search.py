@@ -9,6 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -96,6 +97,30 @@ class Space:
             part.parallel,
         )
 
+    def leg_area(self, which: NDArray[np.intp], u: Array) -> Array:
+        """Return the logarithm of all leg area at positions u (B, 4), in units of the first axis (leg length)."""
+        c = self.candidates(which, u)
+        low, high = np.log(self.limits.leg_length)
+        return np.asarray(np.log(c.couples * (c.side_n**2 + c.side_p**2)) / max(high - low, 1e-9))
+
+    def place(self, which: NDArray[np.intp], centre: Array, offsets: Array) -> Array:
+        """Return positions (B, 4) at offsets from centres; leg length follows leg area, so that conductance stays.
+
+        The thermal conductance of all legs is what most limits hang on. Moving sides and couples at constant
+        conductance lets the search slide along them.
+        """
+        u = np.clip(centre + offsets, 0.0, 1.0)
+        u[:, 0] = np.clip(
+            centre[:, 0] + offsets[:, 0] + self.leg_area(which, u) - self.leg_area(which, centre), 0.0, 1.0
+        )
+        return u
+
+    def frame(self, which: NDArray[np.intp], centre: Array, u: Array) -> Array:
+        """Return the offsets that ``place`` takes to reach u."""
+        offsets = u - centre
+        offsets[:, 0] -= self.leg_area(which, u) - self.leg_area(which, centre)
+        return np.asarray(offsets)
+
     def couples_of(self, u: Array) -> Array:
         """Return the number of couples at positions u."""
         return np.asarray(self.least_couples * (self.most_couples / self.least_couples) ** u[:, 3])
@@ -147,9 +172,9 @@ def search(
     )
     best = _Incumbent(count)
     u, which = np.tile(grid, (count, 1)), np.repeat(np.arange(count), len(grid))
-    _, per_couple = _round(brief, space, best, u, which)
+    first = _round(brief, space, best, u, which)
     if brief.require.voltage is not None:  # once more, each with the couples that its own voltage asks for
-        u[:, 3] = _in_window(brief, space, u, per_couple * problems.series[which])
+        u[:, 3] = _in_window(brief, space, u, first.voltage_per_couple * problems.series[which])
         _round(brief, space, best, u, which, moved=True)
     chosen = keep(best.score)
     problems = problems.take(chosen)
@@ -157,18 +182,19 @@ def search(
     best = best.take(chosen)
     count = problems.n.size
     rng = np.random.default_rng(20260101)  # fixed: same brief, same answer
-    jump = best.u.copy()
+    jump = np.zeros((count, 2, 4))
     for number, step in enumerate(_STEPS):
         axis = np.concatenate([np.eye(4), -np.eye(4)]) * step
         cloud = rng.uniform(-step, step, (7, 4))
-        offsets = np.concatenate([axis, cloud])
-        around = np.concatenate([best.u[:, None, :] + offsets, jump[:, None, :]], axis=1)
-        u = np.clip(around, 0.0, 1.0).reshape(-1, 4)
-        which = np.repeat(np.arange(count), around.shape[1])
-        before, centre = best.score.copy(), best.u.copy()
-        values, per_couple = (v.reshape(count, -1) for v in _round(brief, space, best, u, which))
-        jump = _parabola(centre, before, values[:, :8], step)
-        best.learn(u.reshape(count, -1, 4) - centre[:, None, :], per_couple)
+        near = np.broadcast_to(np.concatenate([axis, cloud]), (count, 15, 4))
+        offsets = np.concatenate([near, jump], axis=1).reshape(-1, 4)
+        which = np.repeat(np.arange(count), 17)
+        centre = best.u[which]
+        u = space.place(which, centre, offsets)
+        outcome = _round(brief, space, best, u, which).by_problem(count)
+        moved = space.frame(which, best.u[which], u).reshape(count, -1, 4)
+        best.learn(moved, outcome)
+        jump = _jump(moved, outcome, step, rng)
         progress((number + 1) / len(_STEPS))
     return problems, space, best.u, best.score
 
@@ -188,26 +214,39 @@ class _Incumbent:
             setattr(other, name, getattr(self, name)[which].copy())
         return other
 
-    def learn(self, offsets: Array, per_couple: Array) -> None:
+    def learn(self, offsets: Array, outcome: _Outcome) -> None:
         """Fit how the voltage of a couple moves with the position, so that the couples can make up for it."""
-        usable = np.isfinite(per_couple) & (per_couple > 0)
-        value = np.log(np.where(usable, per_couple, 1.0))
-        x = np.concatenate([np.ones((*offsets.shape[:2], 1)), offsets], axis=2) * usable[:, :, None]
-        normal = np.einsum("pki,pkj->pij", x, x) + 1e-9 * np.eye(5)
-        self.voltage_slope = np.linalg.solve(normal, np.einsum("pki,pk->pi", x, value)[:, :, None])[:, 1:, 0]
+        with np.errstate(divide="ignore", invalid="ignore"):
+            value = np.log(outcome.voltage_per_couple)[:, :, None]
+        self.voltage_slope = _fit(offsets, value)[:, 1:5, 0]
+
+
+class _Outcome(NamedTuple):
+    """What a round found, arrays (B, ...): score, logarithm of the aim, violations of all limits, voltage a couple."""
+
+    score: Array
+    aim: Array
+    violations: Array
+    voltage_per_couple: Array
+
+    def by_problem(self, count: int) -> _Outcome:
+        """Return the arrays with the problems first."""
+        return _Outcome(*(v.reshape(count, -1, *v.shape[1:]) for v in self))
 
 
 def _round(
     brief: Brief, space: Space, best: _Incumbent, u: Array, which: NDArray[np.intp], moved: bool = False
-) -> tuple[Array, Array]:
-    """Evaluate positions of several problems and keep what is better; return scores and voltage per couple.
+) -> _Outcome:
+    """Evaluate positions of several problems and keep what is better.
 
     With a voltage window the couples are first moved (in place) by what is known of the voltage, unless ``moved``.
     """
     if brief.require.voltage is not None and not moved:
-        shift = np.einsum("bi,bi->b", best.voltage_slope[which], u - best.u[which])
+        area = space.leg_area(which, u)
+        shift = np.einsum("bi,bi->b", best.voltage_slope[which], space.frame(which, best.u[which], u))
         per_couple = best.voltage_per_couple[which] * np.exp(np.clip(shift, -1.0, 1.0))
         u[:, 3] = _in_window(brief, space, u, per_couple * space.problems.series[which])
+        u[:, 0] = np.clip(u[:, 0] + space.leg_area(which, u) - area, 0.0, 1.0)
     candidates = space.candidates(which, u)
     e = evaluate(space.job, candidates, tolerance=1e-6)
     values = score(brief, e)
@@ -219,7 +258,10 @@ def _round(
     best.u[found], best.score[found] = u[k], values[k]
     per_couple = e.rated.voltage / candidates.couples
     best.voltage_per_couple[found] = per_couple[k]
-    return values, per_couple
+    with np.errstate(divide="ignore", invalid="ignore"):
+        aim = np.log(e.objective)
+    violations = np.stack([*(limit.violation for limit in e.limits), buildable(brief, e)], axis=1)
+    return _Outcome(values, aim, violations, per_couple)
 
 
 def _in_window(brief: Brief, space: Space, u: Array, per_couple: Array) -> Array:
@@ -231,14 +273,34 @@ def _in_window(brief: Brief, space: Space, u: Array, per_couple: Array) -> Array
     return np.where(known, space.position_of_couples(wanted), u[:, 3])
 
 
-def _parabola(centre: Array, at_centre: Array, at_axes: Array, step: float) -> Array:
-    """Return the top of the parabolas through the axis points, at most two steps away."""
-    plus, minus = at_axes[:, :4], at_axes[:, 4:]
-    curve = plus + minus - 2 * at_centre[:, None]
-    with np.errstate(divide="ignore", invalid="ignore"):
-        shift = -0.5 * step * (plus - minus) / curve
-    shift = np.where(np.isfinite(shift) & (curve < 0), np.clip(shift, -2 * step, 2 * step), 0.0)
-    return np.clip(centre + shift, 0.0, 1.0)
+def _fit(offsets: Array, values: Array) -> Array:
+    """Return coefficients (P, 9, M) of 1, d and d^2 through values (P, K, M) at offsets d (P, K, 4)."""
+    usable = np.isfinite(values).all(axis=2, keepdims=True)
+    x = np.concatenate([np.ones((*offsets.shape[:2], 1)), offsets, offsets**2], axis=2) * usable
+    normal = np.einsum("pki,pkj->pij", x, x)
+    scale = np.sqrt(np.einsum("pii->pi", normal)) + 1e-12
+    normal = normal / (scale[:, :, None] * scale[:, None, :]) + 1e-9 * np.eye(9)
+    right = np.einsum("pki,pkm->pim", x, np.where(usable, values, 0.0)) / scale[:, :, None]
+    return np.asarray(np.linalg.solve(normal, right) / scale[:, :, None])
+
+
+def _jump(offsets: Array, outcome: _Outcome, step: float, rng: np.random.Generator) -> Array:
+    """Return offsets of two promising places a problem, (P, 2, 4): the best of a model of the aim and of every limit.
+
+    Aim and limits are fitted by parabolas without cross terms, so that the search can slide along a limit that binds;
+    the second keeps a little room to the limits.
+    """
+    count = len(offsets)
+    model = _fit(offsets, np.concatenate([outcome.aim[:, :, None], outcome.violations], axis=2))
+    samples = int(np.clip(200_000 // count, 250, 4000))
+    d = rng.uniform(-1.6 * step, 1.6 * step, (samples, 4)) * rng.uniform(0.05, 1.0, (samples, 1))
+    predicted = np.concatenate([np.ones((samples, 1)), d, d**2], axis=1) @ model
+    found = []
+    for room in (1e-4, 0.3 * step):
+        missed = np.maximum(predicted[:, :, 1:] + room, 0.0).sum(axis=2)
+        value = np.where(missed > 0, -1e4 * (1 + missed), predicted[:, :, 0])
+        found.append(d[np.argmax(value, axis=1)])
+    return np.stack(found, axis=1)
 
 
 def _mean_temperature(job: Job) -> float:

@@ -6,7 +6,7 @@ Every member of ``Modules`` is a float or an array of the batch shape (B,); one 
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, fields, replace
+from dataclasses import dataclass, fields
 from functools import cached_property
 from typing import Any, NamedTuple
 
@@ -88,12 +88,8 @@ class Modules:
 
     def take(self, which: Any) -> Modules:
         """Return the designs ``which`` (mask or indices) of the batch."""
-        picked = {
-            f.name: np.broadcast_to(getattr(self, f.name), (self.size,))[which]
-            for f in fields(self)
-            if f.name != "materials"
-        }
-        return replace(self, **picked)
+        values = {f.name: getattr(self, f.name) for f in fields(self) if f.name != "materials"}
+        return Modules(self.materials, **{name: v[which] if np.ndim(v) else v for name, v in values.items()})
 
     @cached_property
     def area_n(self) -> Array:
@@ -136,14 +132,13 @@ class Modules:
         conductivity = getattr(self, f"substrate_conductivity_{side}")
         cell = self.pitch * np.asarray(self.pitch)
         patches = [np.asarray(a) * (a + self.gap / 2) for a in (self.side_n, self.side_p)]
-        spread_n, spread_p = (
-            np.maximum(spreading_resistance(patch, cell, thickness, conductivity), 1e-30) for patch in patches
-        )
+        spread_n, spread_p = (spreading_resistance(patch, cell, thickness, conductivity) for patch in patches)
+        both = spread_n + spread_p
         metal = self.couples * (patches[0] + patches[1])
         return {
             "interface": np.asarray(getattr(self, f"interface_{side}") / self.footprint),
             "substrate": np.asarray(thickness / (conductivity * np.asarray(self.footprint))),
-            "spreading": np.asarray(self.spreading / (self.couples * (1 / spread_n + 1 / spread_p))),
+            "spreading": self.spreading * spread_n * spread_p / (np.where(both > 0, both, 1.0) * self.couples),
             "electrode": np.asarray(self.electrode_thickness / (self.electrode_conductivity * metal)),
             "joint": np.asarray(self.contact_thermal / self.leg_area),
         }

@@ -11,11 +11,12 @@ from numpy.typing import NDArray
 from tegdesign.errors import ConvergenceError
 from tegdesign.leg.exact import Slopes
 from tegdesign.material.curve import Array
-from tegdesign.module.module import Modules, flows
+from tegdesign.module.module import Flows, Modules, flows
 from tegdesign.system.law import Law
 from tegdesign.system.load.base import LoadLaw, MixedLoads, Terminal
 
 BALANCE = 1e-9  # largest allowed misfit of the heat balance, relative to the heat input
+_RETREATS = 8  # half steps back from states that the legs cannot carry before a design is given up
 
 
 @dataclass(frozen=True)
@@ -67,7 +68,7 @@ def first_guess(modules: Modules, source: Law, sink: Law) -> tuple[Array, Array,
     hot = np.full(modules.size, 400.0)
     cold = np.full(modules.size, 320.0)
     current = np.zeros(modules.size)
-    for _ in range(5):
+    for _ in range(3):
         mean, difference = (hot + cold) / 2, np.maximum(hot - cold, 1.0)
         seebeck, resistance, conductance = _couple_at(modules, mean, hot, cold)
         zt = seebeck**2 * mean / (resistance * conductance)
@@ -120,7 +121,8 @@ def operating_point(
     modules, source, sink, load
         Batches of the same size B; source and sink laws are per module.
     tolerance : float
-        Relative size of the last Newton step in temperature and current.
+        Size of the last Newton step relative to the junction difference and to the current. Heat balances close
+        to 1e-9 of the heat input, or to ``tolerance`` where a larger one is asked for.
     check : bool
         Raise where a design did not converge; otherwise look at ``converged``.
     guess : tuple of arrays, optional
@@ -135,6 +137,8 @@ def operating_point(
     hot, cold, current = (np.array(v, dtype=float) for v in (guess or first_guess(modules, source, sink)))
     free = np.isnan(load.given)
     current = np.where(free, current, load.given)
+    sound = [hot.copy(), cold.copy(), np.where(free, 0.0, current)]  # last state that the legs could carry
+    retreats = np.zeros(size, dtype=np.intp)
     result = _Record(size)
     todo = np.arange(size)
     limit = np.full(size, np.inf)
@@ -143,28 +147,39 @@ def operating_point(
         h, c, i = hot[todo], cold[todo], current[todo]
         now = flows(part, h, c, i)
         step_h, step_c, step_i, terminal, misfit = _newton(part, s, k, law, h, c, i, now)
-        size_now = np.maximum(np.abs(step_h), np.abs(step_c)) / h
+        balance = _balance(part, i, now, misfit)
         with np.errstate(divide="ignore", invalid="ignore"):
+            size_now = np.maximum(np.abs(step_h), np.abs(step_c)) / np.abs(h - c)
             size_now = np.maximum(size_now, np.where(step_i == 0, 0.0, np.abs(step_i) / np.maximum(np.abs(i), 1e-300)))
-        done = (size_now < tolerance) | ((size_now < 1e-9) & (size_now >= 0.5 * limit[todo]))
-        done &= now.converged
+            done = (size_now < tolerance) | ((size_now < 1e-9) & (size_now >= 0.5 * limit[todo]))
+            done &= np.abs(balance) <= max(BALANCE, tolerance) * np.abs(now.heat_hot)
+        usable = np.isfinite(size_now) & now.converged
+        done &= usable
         limit[todo] = size_now
-        lost = ~np.isfinite(size_now) | ~now.converged
-        result.store(todo, h, c, i, now, terminal, misfit, part, done, iteration)
+        result.store(todo, h, c, i, now, terminal, balance, part, done, iteration)
         # damping: the legs stay warmer on the hot side, the current below the short-circuit current
         with np.errstate(invalid="ignore"):
             old = h - c
             shrink = np.where(old + step_h - step_c < 0.2 * old, 0.8 * old / np.maximum(step_c - step_h, 1e-300), 1.0)
             reach = np.maximum(np.abs(step_h), np.abs(step_c))
             shrink = np.minimum(shrink, np.minimum(1.0, 400.0 / np.maximum(reach, 1e-300)))
-            hot[todo], cold[todo] = h + shrink * step_h, c + shrink * step_c
             ceiling = 1.02 * now.open_voltage / now.internal_resistance
-            current[todo] = np.where(free[todo], np.clip(i + step_i, 0.0, ceiling), i)
-        go_on = ~done & ~lost
+            next_i = np.where(free[todo], np.clip(i + step_i, 0.0, ceiling), i)
+        # a state that the legs cannot carry (temperature not monotone) is taken back half way
+        for values, here, there in zip(
+            (hot, cold, current), (h, c, i), (h + shrink * step_h, c + shrink * step_c, next_i), strict=True
+        ):
+            safe = sound.pop(0)
+            values[todo] = np.where(usable, there, (here + safe[todo]) / 2)
+            safe[todo] = np.where(usable, here, safe[todo])
+            sound.append(safe)
+        retreats[todo] += ~usable
+        go_on = ~done & (retreats[todo] <= _RETREATS)
         if not go_on.any():
             break
-        todo = todo[go_on]
-        part, s, k, law = modules.take(todo), source.take(todo), sink.take(todo), load.take(todo)
+        if not go_on.all():
+            todo = todo[go_on]
+            part, s, k, law = modules.take(todo), source.take(todo), sink.take(todo), load.take(todo)
     point = result.freeze()
     if check:
         _insist(point)
@@ -172,7 +187,14 @@ def operating_point(
 
 
 def _newton(
-    modules: Modules, source: Law, sink: Law, load: LoadLaw | MixedLoads, hot: Array, cold: Array, current: Array, now: Any
+    modules: Modules,
+    source: Law,
+    sink: Law,
+    load: LoadLaw | MixedLoads,
+    hot: Array,
+    cold: Array,
+    current: Array,
+    now: Flows,
 ) -> tuple[Array, Array, Array, Terminal, tuple[Array, Array]]:
     """Return the steps in both temperatures and the current; the two heat equations are eliminated by hand."""
     rh, rc = modules.resistance_hot, modules.resistance_cold
@@ -198,9 +220,20 @@ def _newton(
         terminal = Terminal(current, moved_v, v_slope, moved_q, q_slope)
         value, slope = load.evaluate(terminal)
         step_i = -value / slope
-        misfit_h = np.where(weight_h != 0, f_h / np.where(weight_h != 0, weight_h, 1.0), 0.0)
-        misfit_c = np.where(weight_c != 0, f_c / np.where(weight_c != 0, weight_c, 1.0), 0.0)
-    return free_h + by_i_h * step_i, free_c + by_i_c * step_i, step_i, terminal, (misfit_h, misfit_c)
+    misfit = _as_heat(f_h, weight_h, source), _as_heat(f_c, weight_c, sink)
+    return free_h + by_i_h * step_i, free_c + by_i_c * step_i, step_i, terminal, misfit
+
+
+def _as_heat(misfit: Array, weight: Array, law: Law) -> Array:
+    """Return the misfit of a boundary law as heat [W]; none where it is only the rounding of temperatures."""
+    real = (np.abs(misfit) > 4 * np.finfo(float).eps * np.abs(law.c)) & (weight != 0)
+    return np.where(real, misfit, 0.0) / np.where(real, weight, 1.0)
+
+
+def _balance(modules: Modules, current: Array, now: Flows, misfit: tuple[Array, Array]) -> Array:
+    """Return heat in less heat out, both by the boundary laws, less power and lead loss [W]."""
+    heat_in, heat_out = now.heat_hot - misfit[0], now.heat_cold - misfit[1]
+    return np.asarray(heat_in - heat_out - now.voltage * current - current**2 * modules.lead_resistance)
 
 
 class _Record:
@@ -217,16 +250,14 @@ class _Record:
         hot: Array,
         cold: Array,
         current: Array,
-        now: Any,
+        now: Flows,
         terminal: Terminal,
-        misfit: tuple[Array, Array],
+        balance: Array,
         modules: Modules,
         done: NDArray[np.bool_],
         iteration: int,
     ) -> None:
-        """Keep one evaluation; heats in the balance are those of the boundary laws."""
-        heat_in, heat_out = now.heat_hot - misfit[0], now.heat_cold - misfit[1]
-        lost = current**2 * modules.lead_resistance
+        """Keep one evaluation."""
         new = {
             "hot_junction": hot,
             "cold_junction": cold,
@@ -242,7 +273,7 @@ class _Record:
             "heat_in": now.heat_hot,
             "heat_out": now.heat_cold,
             "bypass": now.bypass,
-            "balance_residual": heat_in - heat_out - now.voltage * current - lost,
+            "balance_residual": balance,
             "voltage_slope": terminal.voltage_slope,
             "heat_slope": terminal.heat_slope,
             "converged": done,
@@ -252,12 +283,8 @@ class _Record:
             self.values[name][where] = value
 
     def freeze(self) -> OperatingPoint:
-        """Return the point; what does not balance has not converged."""
-        v = self.values
-        with np.errstate(invalid="ignore"):
-            balanced = np.abs(v["balance_residual"]) <= BALANCE * np.abs(v["heat_in"])
-        v["converged"] &= balanced | (v["heat_in"] == 0)
-        return OperatingPoint(**v)
+        """Return the point."""
+        return OperatingPoint(**self.values)
 
 
 def _insist(point: OperatingPoint) -> None:
@@ -266,8 +293,8 @@ def _insist(point: OperatingPoint) -> None:
     bad = np.flatnonzero(~point.converged)
     k = bad[0]
     raise ConvergenceError(
-        f"operating point not found for {bad.size} of {point.converged.size} designs; the first (number {k}) stopped at "
-        f"junctions {point.hot_junction[k]:.1f} K and {point.cold_junction[k]:.1f} K, {point.current[k]:.4g} A, heat "
+        f"operating point not found for {bad.size} of {point.converged.size} designs; the first (number {k}) stopped "
+        f"at junctions {point.hot_junction[k]:.1f} K and {point.cold_junction[k]:.1f} K, {point.current[k]:.4g} A, heat "
         f"balance residual {point.balance_residual[k]:.2g} W; a current too large for the temperature difference or a "
         "source that cannot be balanced are the usual causes"
     )

@@ -50,26 +50,26 @@ def random_modules():
         side_p = side_n * r.uniform(0.8, 1.25, size)
         pitch = np.maximum(side_n, side_p) * 1.1 + r.uniform(0.2e-3, 1.5e-3, size)
         couples = r.integers(4, 300, size).astype(float)
-        parts = dict(
-            contact_resistivity_n=10 ** r.uniform(-10, -8, size),
-            contact_resistivity_p=10 ** r.uniform(-10, -8, size),
-            contact_thermal=r.uniform(0, 2e-5, size),
-            electrode_thickness=r.uniform(0.05e-3, 0.6e-3, size),
-            electrode_resistivity=1.7241e-8,
-            electrode_coefficient=0.00393,
-            substrate_thickness_hot=r.uniform(0.2e-3, 2e-3, size),
-            substrate_conductivity_hot=r.uniform(10, 200, size),
-            substrate_thickness_cold=r.uniform(0.2e-3, 2e-3, size),
-            substrate_conductivity_cold=r.uniform(10, 200, size),
-            interface_hot=r.uniform(0, 2e-4, size),
-            interface_cold=r.uniform(0, 2e-4, size),
-            filler_conductivity=r.uniform(0, 0.05, size),
-            filler_exponent=r.uniform(0, 1, size),
-            emittance_hot=r.uniform(0.1, 1, size),
-            emittance_cold=r.uniform(0.1, 1, size),
-            edge_conductance=r.uniform(0, 1e-3, size),
-            lead_resistance=r.uniform(0, 0.02, size),
-        )
+        parts = {
+            "contact_resistivity_n": 10 ** r.uniform(-10, -8, size),
+            "contact_resistivity_p": 10 ** r.uniform(-10, -8, size),
+            "contact_thermal": r.uniform(0, 2e-5, size),
+            "electrode_thickness": r.uniform(0.05e-3, 0.6e-3, size),
+            "electrode_resistivity": 1.7241e-8,
+            "electrode_coefficient": 0.00393,
+            "substrate_thickness_hot": r.uniform(0.2e-3, 2e-3, size),
+            "substrate_conductivity_hot": r.uniform(10, 200, size),
+            "substrate_thickness_cold": r.uniform(0.2e-3, 2e-3, size),
+            "substrate_conductivity_cold": r.uniform(10, 200, size),
+            "interface_hot": r.uniform(0, 2e-4, size),
+            "interface_cold": r.uniform(0, 2e-4, size),
+            "filler_conductivity": r.uniform(0, 0.05, size),
+            "filler_exponent": r.uniform(0, 1, size),
+            "emittance_hot": r.uniform(0.1, 1, size),
+            "emittance_cold": r.uniform(0.1, 1, size),
+            "edge_conductance": r.uniform(0, 1e-3, size),
+            "lead_resistance": r.uniform(0, 0.02, size),
+        }
         return Modules(
             pool,
             first,

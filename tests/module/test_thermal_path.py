@@ -74,7 +74,9 @@ def test_spreading_limits():
     # thick plate: no more change with thickness
     thick = [spreading_resistance(0.3 * cell, cell, t, 25.0) for t in (2e-2, 4e-2)]
     assert_allclose(thick[0], thick[1], rtol=1e-12)
-    assert_allclose(spreading_resistance(0.3 * cell, cell, 1e-3, 50.0) * 2, spreading_resistance(0.3 * cell, cell, 1e-3, 25.0))
+    assert_allclose(
+        spreading_resistance(0.3 * cell, cell, 1e-3, 50.0) * 2, spreading_resistance(0.3 * cell, cell, 1e-3, 25.0)
+    )
 
 
 def test_power_law_conduction_is_exact():
@@ -98,7 +100,12 @@ def test_radiation_by_hand():
 
 def test_bypass_by_hand(ideal, change):
     m = change(
-        ideal, filler_conductivity=0.03, filler_exponent=0.0, emittance_hot=0.8, emittance_cold=0.5, edge_conductance=2e-3
+        ideal,
+        filler_conductivity=0.03,
+        filler_exponent=0.0,
+        emittance_hot=0.8,
+        emittance_cold=0.5,
+        edge_conductance=2e-3,
     )
     hot, cold = np.array([500.0]), np.array([300.0])
     area = 1.1e-3 - 452e-6

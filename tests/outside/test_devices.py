@@ -82,7 +82,7 @@ def test_cascade_with_lead_telluride():
     """Jood, Ohta, Yamamoto, Kanatzidis 2018, Joule 2, 1339, doi 10.1016/j.joule.2018.04.025: 12 % over 590 K.
 
     A cascade of nanostructured PbTe on a colder stage; hot side 873 K assumed. Here PbTe alone does the whole span,
-    without losses, held 27 K at the cold end: what the second stage brings and what the losses take nearly cancel. 10 %.
+    without losses, held 27 K at the cold end: what the second stage brings and the losses take nearly cancel. 10 %.
     """
     assert_allclose(ideal_efficiency("lead-telluride-n", "lead-telluride-p", 873.0, 283.0, 27.0), 0.12, rtol=0.1)
 

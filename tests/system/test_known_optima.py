@@ -143,4 +143,6 @@ def test_thirty_percent_contact_share_costs_a_fifth_of_the_efficiency(change, pa
     # thermal: the joints of each leg are 20 % of the resistance to conduction, so 25 % of that of the bare legs
     conducted = matched(m, *held, load=GivenCurrent(current="0 A")).heat_in / (2 * area)
     thermal = change(m, contact_thermal=0.25 * (hot - cold) / conducted / 2)
-    assert_allclose(matched(thermal, *held, load=BestEfficiency()).efficiency / bare.efficiency, 0.80, rtol=0, atol=0.04)
+    assert_allclose(
+        matched(thermal, *held, load=BestEfficiency()).efficiency / bare.efficiency, 0.80, rtol=0, atol=0.04
+    )

@@ -5,12 +5,12 @@ import pytest
 from numpy.testing import assert_allclose
 
 from tegdesign.errors import ConvergenceError
-from tegdesign.system.boundary import Film, FixedHeat, Stream, Surface
+from tegdesign.system.boundary import Film, Stream, Surface
 from tegdesign.system.law import law
 from tegdesign.system.load import BestEfficiency, GivenCurrent, Matched, Resistance
 from tegdesign.system.operating_point import operating_point
 
-STREAM = dict(mass_flow="50 g/s", heat_capacity="1050 J/kg/K", coefficient="90 W/m^2/K", area_enlargement=9)
+STREAM = {"mass_flow": "50 g/s", "heat_capacity": "1050 J/kg/K", "coefficient": "90 W/m^2/K", "area_enlargement": 9}
 SOURCES = {
     "surface": Surface(temperature="500 K"),
     "film": Film(temperature="560 K", coefficient="900 W/m^2/K"),
@@ -110,7 +110,10 @@ HARD = {
     "1 K in all": (Surface(temperature="301 K"), SINKS["surface"]),
     "1 K and poor cooling": (Surface(temperature="301 K"), Film(temperature="300 K", coefficient="10 W/m^2/K")),
     "tiny film": (Film(temperature="800 K", coefficient="2 W/m^2/K"), SINKS["film"]),
-    "huge film": (Film(temperature="500 K", coefficient="1e9 W/m^2/K"), Film(temperature="300 K", coefficient="1e9 W/m^2/K")),
+    "huge film": (
+        Film(temperature="500 K", coefficient="1e9 W/m^2/K"),
+        Film(temperature="300 K", coefficient="1e9 W/m^2/K"),
+    ),
     "huge stream": (Stream(inlet_temperature="500 K", **{**STREAM, "mass_flow": "1e9 kg/s"}), SINKS["surface"]),
     "air on both sides": (
         Film(temperature="900 K", coefficient="30 W/m^2/K", area_enlargement=5),
