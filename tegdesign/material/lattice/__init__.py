@@ -1,0 +1,1 @@
+"""Thermal conductivity of the lattice: one file a model, one interface."""

@@ -1,0 +1,1 @@
+"""Mechanisms that scatter phonons: one file each; a branch adds their rates at every frequency."""

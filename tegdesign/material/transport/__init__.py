@@ -1,0 +1,1 @@
+"""Electronic transport from bands: integrals over energy, charge neutrality, linear response."""

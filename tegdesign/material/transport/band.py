@@ -1,0 +1,137 @@
+"""One band, parabolic or Kane: its states and its transport distribution."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from math import pi
+from typing import Literal
+
+import numpy as np
+
+from tegdesign.errors import InputError
+from tegdesign.material.curve import Array
+from tegdesign.material.transport.constants import BOLTZMANN, CHARGE, ELECTRON_MASS, HBAR
+from tegdesign.material.transport.law import Law, above_zero, at_temperature, positive_at
+from tegdesign.material.transport.scattering.states import Mechanism, States, Surroundings
+
+Carrier = Literal["electron", "hole"]
+
+
+@dataclass(frozen=True)
+class Band:
+    """Equal, isotropic valleys of one kind of carrier; every energy is counted from the band edge into the
+    band.
+
+    Parameters
+    ----------
+    carrier : "electron" or "hole"
+        Conduction or valence band.
+    mass : float or law
+        Density-of-states mass of one valley at the edge, in electron masses.
+    scattering : tuple of Mechanism
+        Their rates add at every energy (Matthiessen's rule inside the integral).
+    inertial_mass : float or law, optional
+        Mass that governs the velocity, in electron masses; ``mass`` if not given.
+    degeneracy : float
+        Number of valleys.
+    offset : float or law
+        How far the edge lies inside the band from the principal edge of its kind [J]; may be negative.
+    kane_gap : float or law, optional
+        Energy E_k [J] of Kane's dispersion E (1 + E/E_k) = (hbar k)^2 / (2 m); parabolic if not given.
+    name : str
+        For messages and tables.
+    """
+
+    carrier: Carrier
+    mass: Law
+    scattering: tuple[Mechanism, ...]
+    inertial_mass: Law | None = None
+    degeneracy: float = 1.0
+    offset: Law = 0.0
+    kane_gap: Law | None = None
+    name: str = ""
+
+    def __post_init__(self) -> None:
+        """Refuse what can be seen to be wrong without a temperature."""
+        if self.carrier not in ("electron", "hole"):
+            raise InputError(f"carrier of {self.label} is {self.carrier!r}; write 'electron' or 'hole'")
+        if not self.scattering:
+            raise InputError(f"scattering of {self.label} is empty; give one or more mechanisms")
+        above_zero(self.degeneracy, f"degeneracy of {self.label}")
+        for value, what in (
+            (self.mass, "mass"),
+            (self.inertial_mass, "inertial_mass"),
+            (self.kane_gap, "kane_gap"),
+        ):
+            if isinstance(value, (int, float)):
+                above_zero(value, f"{what} of {self.label}")
+
+    @property
+    def label(self) -> str:
+        """The band in words, for messages."""
+        return f"band {self.name}" if self.name else f"the {self.carrier} band"
+
+    @property
+    def sign(self) -> int:
+        """Direction of the band on the energy axis and sign of minus its charge: 1 for electrons, -1 for
+        holes.
+        """
+        return 1 if self.carrier == "electron" else -1
+
+    def states(self, temperature: Array, energy: Array) -> States:
+        """Return the states at energies [kT above the edge], shape (P, N), for temperatures [K], shape (P,).
+
+        Raises
+        ------
+        InputError
+            A mass or the Kane gap is not above 0 at one of the temperatures.
+        """
+        t = temperature[..., None]
+        mass = positive_at(self.mass, t, f"mass of {self.label}") * ELECTRON_MASS
+        inertial = mass
+        if self.inertial_mass is not None:
+            inertial = positive_at(self.inertial_mass, t, f"inertial_mass of {self.label}") * ELECTRON_MASS
+        gamma, slope = BOLTZMANN * t * energy, np.ones(1)
+        if self.kane_gap is not None:
+            ratio = BOLTZMANN * t / positive_at(self.kane_gap, t, f"kane_gap of {self.label}")
+            bent = ratio * energy
+            slope = 1 + 2 * bent
+            bent += 1
+            gamma *= bent
+        return States(t, energy, gamma, slope, mass, inertial)
+
+    def distribution(self, states: States, around: Surroundings) -> Array:
+        """Return the transport distribution Xi [S/m] of the states, in their shape.
+
+        Xi = e^2 (v^2/3) tau g = e^2 N (2 m)^1.5 gamma^1.5 tau / (3 pi^2 hbar^3 m_inertial gamma').
+
+        Raises
+        ------
+        InputError
+            Nothing scatters the carriers.
+        """
+        rate = self.scattering[0].rate(states, around)
+        for mechanism in self.scattering[1:]:
+            rate = rate + mechanism.rate(states, around)
+        if not np.all(rate > 0):
+            raise InputError(
+                f"scattering of {self.label} is 0 1/s but must be above 0 (ionised impurities alone do "
+                "that at zero net doping); give their density or a second mechanism"
+            )
+        factor = self.degeneracy * CHARGE**2 / (3 * pi**2 * HBAR**3) * (2 * states.mass) ** 1.5
+        return np.asarray(factor / (states.inertial_mass * states.slope) * states.volume / rate)
+
+    def states_below(self, states: States) -> Array:
+        """Return the number of states between the edge and the energies [1/m^3]: N (2 m gamma)^1.5 / (3 pi^2
+        hbar^3).
+        """
+        factor = self.degeneracy * (2 * states.mass) ** 1.5 / (3 * pi**2 * HBAR**3)
+        return np.asarray(factor * states.volume)
+
+    def density_of_states(self, states: States) -> Array:
+        """Return the density of states, both spins and all valleys [1/(J m^3)]."""
+        return np.asarray(2 * self.degeneracy * states.density)
+
+    def edge_offset(self, temperature: Array) -> Array:
+        """Return the offset of the edge [J] at temperatures [K], in their shape."""
+        return at_temperature(self.offset, temperature, f"offset of {self.label}")
