@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import sys
 from importlib import import_module
 from typing import Annotated, Any
@@ -90,4 +91,7 @@ def tegdesign_command(
 
 def main() -> None:
     """Run the command line; exit code 0 done, 1 job failed, 2 wrong input."""
+    # The matrices here are small: more threads only wait for each other. Set before numpy is imported.
+    for library in ("OPENBLAS", "OMP", "MKL"):
+        os.environ.setdefault(f"{library}_NUM_THREADS", "1")
     typer.main.get_command(app).main(args=sys.argv[1:], prog_name="tegdesign")

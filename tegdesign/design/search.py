@@ -222,12 +222,13 @@ class _Incumbent:
 
 
 class _Outcome(NamedTuple):
-    """What a round found, arrays (B, ...): score, logarithm of the aim, violations of all limits, voltage a couple."""
+    """What a round found, arrays (B, ...): score, logarithm of the aim, violations of all limits, V a couple, leg cut."""
 
     score: Array
     aim: Array
     violations: Array
     voltage_per_couple: Array
+    shorten: Array
 
     def by_problem(self, count: int) -> _Outcome:
         """Return the arrays with the problems first."""
@@ -247,21 +248,48 @@ def _round(
         per_couple = best.voltage_per_couple[which] * np.exp(np.clip(shift, -1.0, 1.0))
         u[:, 3] = _in_window(brief, space, u, per_couple * space.problems.series[which])
         u[:, 0] = np.clip(u[:, 0] + space.leg_area(which, u) - area, 0.0, 1.0)
-    candidates = space.candidates(which, u)
-    e = evaluate(space.job, candidates, tolerance=1e-6)
-    values = score(brief, e)
+    outcome = _measure(brief, space, u, which)
+    hot = np.flatnonzero((outcome.shorten < 1) & (u[:, 0] > 0))
+    if hot.size:  # legs too long for a temperature limit are cut to it, so that the search goes along it
+        low, high = np.log(space.limits.leg_length)
+        u[hot, 0] = np.clip(u[hot, 0] + np.log(outcome.shorten[hot]) / max(high - low, 1e-9), 0.0, 1.0)
+        for whole, part in zip(outcome, _measure(brief, space, u[hot], which[hot]), strict=True):
+            whole[hot] = part
+    values = outcome.score
     order = np.argsort(values, kind="stable")
     top = np.full(best.score.size, -1)
     top[which[order]] = order  # the last one written is the best of its problem
     found = np.flatnonzero((top >= 0) & (values[top] > best.score))
     k = top[found]
     best.u[found], best.score[found] = u[k], values[k]
-    per_couple = e.rated.voltage / candidates.couples
-    best.voltage_per_couple[found] = per_couple[k]
+    best.voltage_per_couple[found] = outcome.voltage_per_couple[k]
+    return outcome
+
+
+def _measure(brief: Brief, space: Space, u: Array, which: NDArray[np.intp]) -> _Outcome:
+    """Evaluate positions (B, 4) of problems ``which``."""
+    candidates = space.candidates(which, u)
+    e = evaluate(space.job, candidates, tolerance=1e-4)  # of the last step; what is left is its square
     with np.errstate(divide="ignore", invalid="ignore"):
         aim = np.log(e.objective)
     violations = np.stack([*(limit.violation for limit in e.limits), buildable(brief, e)], axis=1)
-    return _Outcome(values, aim, violations, per_couple)
+    return _Outcome(score(brief, e), aim, violations, e.rated.voltage / candidates.couples, _shorten(e))
+
+
+def _shorten(e: Evaluation) -> Array:
+    """Return the factor on leg length that brings the hottest junction to its limit, 1 where it is below.
+
+    Right for a given heat, where the difference goes as the length; too little elsewhere, and done again next time.
+    """
+    cold = {"rated": e.rated.cold_junction, "open circuit": e.opened.cold_junction}
+    factor = np.ones(e.candidates.n.size)
+    for limit in e.limits:
+        if limit.unit == "K" and limit.sense == "most" and "cold" not in limit.key:
+            base = cold[limit.state]
+            with np.errstate(divide="ignore", invalid="ignore"):
+                ratio = (limit.bound - 0.05 - base) / (limit.value - base)
+            factor = np.where((limit.violation > 0) & (ratio > 0.02), np.minimum(factor, ratio), factor)
+    return factor
 
 
 def _in_window(brief: Brief, space: Space, u: Array, per_couple: Array) -> Array:
@@ -291,8 +319,9 @@ def _jump(offsets: Array, outcome: _Outcome, step: float, rng: np.random.Generat
     the second keeps a little room to the limits.
     """
     count = len(offsets)
-    model = _fit(offsets, np.concatenate([outcome.aim[:, :, None], outcome.violations], axis=2))
-    samples = int(np.clip(200_000 // count, 250, 4000))
+    near = np.nanmax(outcome.violations, axis=(0, 1), initial=-np.inf) > -0.5  # the others cannot matter in a step
+    model = _fit(offsets, np.concatenate([outcome.aim[:, :, None], outcome.violations[:, :, near]], axis=2))
+    samples = int(np.clip(60_000 // count, 250, 3000))
     d = rng.uniform(-1.6 * step, 1.6 * step, (samples, 4)) * rng.uniform(0.05, 1.0, (samples, 1))
     predicted = np.concatenate([np.ones((samples, 1)), d, d**2], axis=1) @ model
     found = []

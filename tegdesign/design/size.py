@@ -120,10 +120,10 @@ def size(brief: Brief | str | os.PathLike[str], *, progress: Callable[[float], N
         np.array([c[1] for c in ways], dtype=float),
     )
 
-    def six_best(scores: Array) -> NDArray[np.intp]:
-        return np.argsort(-scores, kind="stable")[:6]
+    def three_best(scores: Array) -> NDArray[np.intp]:
+        return np.argsort(-scores, kind="stable")[:3]
 
-    problems, space, u, scores = search(brief, job, problems, six_best, progress)
+    problems, space, u, scores = search(brief, job, problems, three_best, progress)
     if not np.any(np.isfinite(scores)):
         raise ConvergenceError(
             "no candidate of this brief has an operating point; widen limits.leg_length or check source and sink"
