@@ -20,6 +20,10 @@ from tegdesign.system.load import AnyLoad, GivenCurrent
 from tegdesign.system.operating_point import OperatingPoint, operating_point
 
 
+# Weights of the score: broken temperature limits, then missed requirements, then the aim.
+HARD, SOFT = -1e8, -1e4
+
+
 @dataclass(frozen=True)
 class Job:
     """What all candidates share."""
@@ -79,6 +83,11 @@ class Limit(NamedTuple):
     scale: Array
 
     @property
+    def hard(self) -> bool:
+        """Whether it is a limit of temperature: those come before any requirement."""
+        return self.unit == "K"
+
+    @property
     def violation(self) -> Array:
         """By how much the bound is broken, in units of ``scale``; negative is room left."""
         over = self.value - self.bound if self.sense == "most" else self.bound - self.value
@@ -110,8 +119,20 @@ class Evaluation:
 
     @cached_property
     def shortfall(self) -> Array:
-        """Sum of all violations of each candidate: a missed limit is no licence to miss others as well."""
-        return np.asarray(sum(np.maximum(limit.violation, 0.0) for limit in self.limits))
+        """Sum of the missed requirements: one that is missed is no licence to miss others as well."""
+        return self._missed(hard=False)
+
+    @cached_property
+    def overheat(self) -> Array:
+        """Sum of the broken temperature limits: no requirement may buy them off."""
+        return self._missed(hard=True)
+
+    def _missed(self, hard: bool) -> Array:
+        total = np.zeros(self.candidates.n.size)
+        for limit in self.limits:
+            if limit.hard == hard:
+                total += np.clip(np.nan_to_num(limit.violation, nan=1e3), 0.0, 1e3)
+        return total
 
     @cached_property
     def material_mass(self) -> Array:
@@ -135,11 +156,11 @@ class Evaluation:
 
     @cached_property
     def score(self) -> Array:
-        """Logarithm of the objective, far below any of them where a limit is broken, -inf without a solution."""
+        """Logarithm of the objective, far below where a requirement is missed, deep below where a limit is broken."""
         with np.errstate(divide="ignore", invalid="ignore"):
             good = np.log(np.maximum(self.objective, 1e-300))
-        missed = np.minimum(np.nan_to_num(self.shortfall, nan=np.inf), 1e6)
-        score = np.where(missed > 1e-9, -1e4 * (1 + missed) + 1e-3 * good, good)
+        score = np.where(self.shortfall > 1e-9, SOFT * (1 + self.shortfall) + 1e-3 * good, good)
+        score = np.where(self.overheat > 1e-9, HARD * (1 + self.overheat) + SOFT * self.shortfall, score)
         return np.where(np.isfinite(self.violation), score, -np.inf)
 
 

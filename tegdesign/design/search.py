@@ -15,7 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from tegdesign.design.brief import Brief
-from tegdesign.design.evaluate import Candidates, Evaluation, Job, evaluate
+from tegdesign.design.evaluate import HARD, SOFT, Candidates, Evaluation, Job, evaluate
 from tegdesign.leg.closed_form import area_ratio_of_best_efficiency
 from tegdesign.material.curve import Array
 
@@ -44,6 +44,7 @@ class Space:
         """Work out what stays the same: room for legs, area ratios to seek around, bounds of the couples."""
         limits = brief.limits
         self.job, self.problems = job, problems
+        self.hard = np.zeros(0, dtype=bool)  # which limits are of temperature or of the workshop, known once measured
         self.limits = limits
         self.width, self.depth = (side - 2 * limits.edge_margin for side in limits.footprint)
         self.footprint = limits.footprint[0] * limits.footprint[1]
@@ -146,7 +147,7 @@ def buildable(brief: Brief, e: Evaluation) -> Array:
 def score(brief: Brief, e: Evaluation) -> Array:
     """Return the score of the candidates, workshop limits included."""
     broken = buildable(brief, e)
-    return np.where(broken > 1e-9, np.minimum(e.score, 0.0) - 1e4 * (1 + broken), e.score)
+    return np.where(broken > 1e-9, np.minimum(e.score, 0.0) + HARD * (1 + broken), e.score)
 
 
 def search(
@@ -194,7 +195,7 @@ def search(
         outcome = _round(brief, space, best, u, which).by_problem(count)
         moved = space.frame(which, best.u[which], u).reshape(count, -1, 4)
         best.learn(moved, outcome)
-        jump = _jump(moved, outcome, step, rng)
+        jump = _jump(moved, outcome, space.hard, step, rng)
         progress((number + 1) / len(_STEPS))
     return problems, space, best.u, best.score
 
@@ -272,6 +273,7 @@ def _measure(brief: Brief, space: Space, u: Array, which: NDArray[np.intp]) -> _
     e = evaluate(space.job, candidates, tolerance=1e-4)  # of the last step; what is left is its square
     with np.errstate(divide="ignore", invalid="ignore"):
         aim = np.log(e.objective)
+    space.hard = np.array([*(limit.hard for limit in e.limits), True])
     violations = np.stack([*(limit.violation for limit in e.limits), buildable(brief, e)], axis=1)
     return _Outcome(score(brief, e), aim, violations, e.rated.voltage / candidates.couples, _shorten(e))
 
@@ -312,7 +314,9 @@ def _fit(offsets: Array, values: Array) -> Array:
     return np.asarray(np.linalg.solve(normal, right) / scale[:, :, None])
 
 
-def _jump(offsets: Array, outcome: _Outcome, step: float, rng: np.random.Generator) -> Array:
+def _jump(
+    offsets: Array, outcome: _Outcome, hard: NDArray[np.bool_], step: float, rng: np.random.Generator
+) -> Array:
     """Return offsets of two promising places a problem, (P, 2, 4): the best of a model of the aim and of every limit.
 
     Aim and limits are fitted by parabolas without cross terms, so that the search can slide along a limit that binds;
@@ -326,8 +330,10 @@ def _jump(offsets: Array, outcome: _Outcome, step: float, rng: np.random.Generat
     predicted = np.concatenate([np.ones((samples, 1)), d, d**2], axis=1) @ model
     found = []
     for room in (1e-4, 0.3 * step):
-        missed = np.maximum(predicted[:, :, 1:] + room, 0.0).sum(axis=2)
-        value = np.where(missed > 0, -1e4 * (1 + missed), predicted[:, :, 0])
+        missed = np.maximum(predicted[:, :, 1:] + room, 0.0)
+        broken, short = missed @ hard[near], missed @ ~hard[near]
+        value = np.where(short > 0, SOFT * (1 + short), predicted[:, :, 0])
+        value = np.where(broken > 0, HARD * (1 + broken) + SOFT * short, value)
         found.append(d[np.argmax(value, axis=1)])
     return np.stack(found, axis=1)
 

@@ -159,7 +159,10 @@ def _single(brief: Brief, side: str) -> str:
 
 
 def connections(brief: Brief) -> Iterator[tuple[int, int]]:
-    """Yield modules in series and in parallel: all in series, and other ways only where a voltage is asked for."""
+    """Yield modules in series and in parallel, at most 24 numbers of modules from one to the limit.
+
+    All in series where the load adapts and no voltage is asked for, else every way that divides evenly.
+    """
     most = brief.limits.modules
     counts = (
         range(1, most + 1)

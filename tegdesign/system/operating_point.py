@@ -293,10 +293,10 @@ def _insist(point: OperatingPoint) -> None:
     bad = np.flatnonzero(~point.converged)
     k = bad[0]
     raise ConvergenceError(
-        f"operating point not found for {bad.size} of {point.converged.size} designs; the first (number {k}) stopped "
-        f"at junctions {point.hot_junction[k]:.1f} K and {point.cold_junction[k]:.1f} K, {point.current[k]:.4g} A, heat "
-        f"balance residual {point.balance_residual[k]:.2g} W; a current too large for the temperature difference or a "
-        "source that cannot be balanced are the usual causes"
+        f"operating point not found for {bad.size} of {point.converged.size} designs; the first (number {k}) "
+        f"stopped at junctions {point.hot_junction[k]:.1f} K and {point.cold_junction[k]:.1f} K, "
+        f"{point.current[k]:.4g} A, heat balance residual {point.balance_residual[k]:.2g} W; a current too large for "
+        "the temperature difference or a source that cannot be balanced are the usual causes"
     )
 
 

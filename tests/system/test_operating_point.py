@@ -111,8 +111,8 @@ HARD = {
     "1 K and poor cooling": (Surface(temperature="301 K"), Film(temperature="300 K", coefficient="10 W/m^2/K")),
     "tiny film": (Film(temperature="800 K", coefficient="2 W/m^2/K"), SINKS["film"]),
     "huge film": (
-        Film(temperature="500 K", coefficient="1e9 W/m^2/K"),
-        Film(temperature="300 K", coefficient="1e9 W/m^2/K"),
+        Film(temperature="500 K", coefficient="1e12 W/m^2/K"),
+        Film(temperature="300 K", coefficient="1e12 W/m^2/K"),
     ),
     "huge stream": (Stream(inlet_temperature="500 K", **{**STREAM, "mass_flow": "1e9 kg/s"}), SINKS["surface"]),
     "air on both sides": (
@@ -195,3 +195,16 @@ def test_slopes_at_the_answer_follow_the_whole_system(batch):
 def test_take_picks_designs(batch):
     p = solve(batch, "film", "film", "matched")
     assert_allclose(p.take([5, 2]).power, p.power[[5, 2]], rtol=0)
+
+
+def test_a_path_of_nearly_no_resistance(equal_legs, change):
+    """There the rounding of temperatures alone makes heats; without any resistance the answer is the same."""
+    r = np.random.default_rng(5)
+    size = 400
+    bare = equal_legs(200e-6, 1e-5, 1.5, r.uniform(1e-3, 5e-3, size))
+    ones, hot, cold = np.ones(size), r.uniform(400, 550, size), r.uniform(290, 330, size)
+    load = Matched().law(ones, ones)
+    held = operating_point(bare, law(ones, 0.0, hot, ones), law(ones, 0.0, cold, ones), load)
+    tight = change(bare, contact_thermal=10 ** r.uniform(-16, -13, size))
+    films = (law(1e8, 1.0, 1e8 * t, ones) for t in (hot, cold))  # W/K
+    assert_allclose(operating_point(tight, *films, load).power, held.power, rtol=1e-8)

@@ -83,6 +83,11 @@ class Load(Part):
 
     kind: str
 
+    @property
+    def adapts(self) -> bool:
+        """Whether the load finds its own current, so that it does not matter how modules are joined."""
+        return False
+
     @abstractmethod
     def law(self, series: Array, parallel: Array) -> LoadLaw:
         """Return the law per module for modules in ``series`` and ``parallel``."""

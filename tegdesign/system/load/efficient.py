@@ -20,6 +20,11 @@ class BestEfficiency(Load):
 
     kind: Literal["efficiency"] = "efficiency"
 
+    @property
+    def adapts(self) -> bool:
+        """It does."""
+        return True
+
     def law(self, series: Array, parallel: Array) -> LoadLaw:
         """Return d(P/Q)/dI = 0."""
         return LoadLaw(best_efficiency, numbers(0.0, series))

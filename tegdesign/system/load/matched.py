@@ -18,6 +18,11 @@ class Matched(Load):
 
     kind: Literal["matched"] = "matched"
 
+    @property
+    def adapts(self) -> bool:
+        """It does."""
+        return True
+
     def law(self, series: Array, parallel: Array) -> LoadLaw:
         """Return dP/dI = 0."""
         return LoadLaw(most_power, numbers(0.0, series))
