@@ -45,7 +45,7 @@ def compare(
     form = output.style(json, csv)
     if figure is not None:
         check_ending(figure)
-    output.check_places(figure, to)
+    output.check_places(brief, figure, to)
     result = compare_pairs(brief, progress=on_terminal("comparing", quiet))
     if figure is not None:
         draw_comparison(result, figure)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import os
 from collections.abc import Mapping, Sequence
 from pathlib import Path
 from typing import Annotated, Any, Literal
@@ -46,20 +47,43 @@ def emit(text: str, output: Path | None = None) -> None:
     """Print a text on standard output, or write it into a file in one piece."""
     text = text if text.endswith("\n") or not text else text + "\n"
     if output is None or str(output) == "-":
-        typer.echo(text, nl=False)
+        _print(text)
     else:
         from tegdesign.document import write_whole
 
         write_whole(output, text)
 
 
-def check_places(*places: Path | None) -> None:
-    """Refuse files that could not be written before the work for them begins, so that none is written alone."""
-    from tegdesign.document import check_place
+def _print(text: str) -> None:
+    """Print data; characters that the screen does not know become question marks, a full disk one line."""
+    import sys
 
+    from tegdesign.errors import TegdesignError
+
+    known = sys.stdout.encoding or "utf-8"
+    try:
+        sys.stdout.write(text.encode(known, "replace").decode(known))
+        sys.stdout.flush()
+    except BrokenPipeError:
+        raise
+    except OSError as error:
+        raise TegdesignError(f"standard output cannot be written ({error.strerror})") from error
+
+
+def check_places(read: Path, *places: Path | None) -> None:
+    """Refuse files that could not be written, or would overwrite the input or each other, before the work begins."""
+    from tegdesign.document import check_place
+    from tegdesign.errors import InputError
+
+    taken = {os.path.realpath(read): "the file that is read"}
     for place in places:
-        if place is not None and str(place) != "-":
-            check_place(place)
+        if place is None or str(place) == "-":
+            continue
+        check_place(place)
+        real = os.path.realpath(place)
+        if real in taken and os.path.isfile(real) | (taken[real] != "the file that is read"):
+            raise InputError(f"{place}: would overwrite {taken[real]}; give another name")
+        taken[real] = f"another output, {place}"
 
 
 def note(text: str) -> None:

@@ -8,7 +8,7 @@ from collections.abc import Callable
 
 def on_terminal(what: str, quiet: bool) -> Callable[[float], None]:
     """Return a function that shows the share done on a terminal, and is silent in a pipe or with ``quiet``."""
-    if quiet or not sys.stderr.isatty():
+    if quiet or sys.stderr is None or not sys.stderr.isatty():
         return lambda share: None
 
     def show(share: float) -> None:

@@ -47,7 +47,7 @@ def rate(
 ) -> None:
     """Rate a design: its report, or a table of states when temperatures, loads, a curve or a map are asked for.
 
-    Exit code 1: a limit or requirement of the design is missed.
+    Exit code 1: a limit or requirement of the design is missed, or a state of the table passes a service limit.
 
     \b
     Examples:
@@ -62,7 +62,7 @@ def rate(
         raise typer.BadParameter("give temperatures and loads, or --curve, or --map; one at a time")
     if figure is not None and not (curve or over):
         raise typer.BadParameter("--figure goes with --curve or --map")
-    output.check_places(figure, to)
+    output.check_places(design, figure, to)
     if not (table or curve or over):
         _report(design, form, to)
         return
@@ -75,7 +75,10 @@ def rate(
         sweep = curve_of(made)
         picture = "curve"
     elif over:
-        sweep = map_over(made, dict(_axis(text) for text in over))
+        axes = [_axis(text) for text in over]
+        if len(dict(axes)) < len(axes):
+            raise InputError(f"--map names the key '{axes[-1][0]}' twice; give each key once with all its values")
+        sweep = map_over(made, dict(axes))
         sweep.column(of)
         picture = "map"
     else:
@@ -87,6 +90,8 @@ def rate(
 
         (draw_curve(sweep, made, figure) if picture == "curve" else draw_map(sweep, made, of, figure))
     output.emit(_text(sweep, form, of if picture == "map" else ""), to)
+    if not sweep.met:
+        raise typer.Exit(1)
 
 
 def _report(design: Path, form: output.Style, to: Path | None) -> None:

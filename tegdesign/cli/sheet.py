@@ -36,8 +36,7 @@ def sheet(
     screen = to is None or str(to) == "-"
     if to is not None and not screen:
         check_suffix(to)
-    output.check_places(to)
-    output.check_places(to)
+    output.check_places(design, to)
     from tegdesign.design.rate import rate
 
     rating = rate(design)

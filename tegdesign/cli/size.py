@@ -44,7 +44,7 @@ def size(
     target = to or Path(f"{brief.stem}.design.toml")
     if sheet is not None:
         check_suffix(sheet)
-    output.check_places(target, sheet)
+    output.check_places(brief, target, sheet)
     result = size_brief(brief, progress=on_terminal("sizing", quiet))
     result.design.save(target)
     if sheet is not None:

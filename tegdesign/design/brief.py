@@ -2,14 +2,17 @@
 
 from __future__ import annotations
 
+import math
 import os
 from typing import Annotated
 
+import numpy as np
 from pydantic import Field, field_validator, model_validator
 
 from tegdesign.design.parts import (
     Aim,
     Count,
+    Gap,
     Length,
     Losses,
     MaterialUse,
@@ -47,10 +50,15 @@ class Limits(Part):
     modules: Count = 1
     leg_length: tuple[Length, Length] = (0.5e-3, 10e-3)
     leg_side: tuple[Length, Length] = (0.6e-3, 8e-3)
-    gap: Length = 0.5e-3
+    gap: Gap = 0.5e-3
     edge_margin: Thickness = 1e-3
     couples: tuple[Count, Count] = (2, 2000)
-    slenderness: Annotated[float, Field(gt=0)] = 8.0
+    slenderness: Annotated[float, Field(strict=True, gt=0, allow_inf_nan=False)] = 8.0
+
+    @property
+    def corner(self) -> float:
+        """Least pitch less leg side [m]: legs of one kind face each other corner to corner, the gap apart."""
+        return self.gap / math.sqrt(2)
 
     @model_validator(mode="after")
     def _possible(self) -> Limits:
@@ -106,7 +114,14 @@ def check_direction(source: AnyBoundary, sink: AnyBoundary) -> None:
     if isinstance(sink, FixedHeat):
         raise ValueError("sink of kind 'heat' has no temperature to settle at; use a surface, film or stream")
     hot, cold = source.reference_temperature, sink.reference_temperature
-    if not isinstance(source, FixedHeat) and hot <= cold:
+    if isinstance(source, FixedHeat):
+        reached = float(source.law(np.ones(1), np.ones(1)).open_temperature[0])
+        if reached <= cold:
+            raise ValueError(
+                f"source of {source.heat:.6g} W loses so much by its leak that it reaches only {reached:.2f} K, not "
+                f"above the sink at {cold:.2f} K; mend heat, leak_conductance or ambient_temperature"
+            )
+    elif hot <= cold:
         raise ValueError(
             f"source at {hot:.2f} K is not hotter than the sink at {cold:.2f} K; exchange them or mend a temperature"
         )

@@ -51,7 +51,7 @@ class Rank:
     T_cold_junction_K: float
     penalty_of_equal_areas: float
     compatibility_spread: float
-    K_outside_data: float
+    outside_data_K: float
     hazards: str
 
 
@@ -203,7 +203,7 @@ def _rank(e: Evaluation, equal: Evaluation, materials: Sequence[Material], k: in
         met=bool(e.violation[k] <= 1e-9),
         limit=_tightest(e, k),
         power_W=power,
-        efficiency=float(e.rated.efficiency[k]),
+        efficiency=float(e.efficiency[k]),
         power_per_footprint_W_per_m2=float(e.rated.power[k] / c.footprint[k]),
         power_per_material_mass_W_per_kg=power / mass,
         material_mass_kg=mass,
@@ -221,7 +221,7 @@ def _rank(e: Evaluation, equal: Evaluation, materials: Sequence[Material], k: in
         T_cold_junction_K=cold,
         penalty_of_equal_areas=float(1 - equal.objective[k] / e.objective[k]),
         compatibility_spread=_compatibility(n, p, hot, cold),
-        K_outside_data=outside,
+        outside_data_K=outside,
         hazards=", ".join(dict.fromkeys([*n.hazard_tags, *p.hazard_tags])),
     )
 

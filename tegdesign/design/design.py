@@ -4,9 +4,9 @@ from __future__ import annotations
 
 import os
 from collections.abc import Iterator, Mapping
-from typing import Annotated, Any
+from typing import Any
 
-from pydantic import BaseModel, Field, model_validator
+from pydantic import BaseModel, model_validator
 
 from tegdesign.design.brief import MATERIAL_FILE, check_direction
 from tegdesign.design.parts import Aim, Count, Length, Losses, MaterialUse, Require, Stack, Thickness
@@ -37,8 +37,8 @@ class Geometry(Part):
     leg_side_p: Length
     pitch: Length
     edge_margin: Thickness = 1e-3
-    modules_in_series: Annotated[int, Field(ge=1, le=10000)] = 1
-    modules_in_parallel: Annotated[int, Field(ge=1, le=10000)] = 1
+    modules_in_series: Count = 1
+    modules_in_parallel: Count = 1
 
     @model_validator(mode="after")
     def _possible(self) -> Geometry:

@@ -19,7 +19,6 @@ from tegdesign.system.boundary import AnyBoundary
 from tegdesign.system.load import AnyLoad, GivenCurrent
 from tegdesign.system.operating_point import OperatingPoint, operating_point
 
-
 # Weights of the score: broken temperature limits, then missed requirements, then the aim.
 HARD, SOFT = -1e8, -1e4
 
@@ -143,12 +142,18 @@ class Evaluation:
         return np.asarray(c.modules * c.couples * c.leg_length * legs)
 
     @cached_property
+    def efficiency(self) -> Array:
+        """Power over the heat of the source: all of it where it is given, else what the generator draws."""
+        given = self.job.source.given_heat
+        return self.rated.efficiency if given is None else self.rated.power * self.candidates.modules / given
+
+    @cached_property
     def objective(self) -> Array:
         """The quantity aimed at: W, 1, W/m^2 or W/kg."""
         power = self.rated.power * self.candidates.modules
         aims: dict[Aim, Callable[[], Array]] = {
             "power": lambda: power,
-            "efficiency": lambda: self.rated.efficiency,
+            "efficiency": lambda: self.efficiency,
             "power per footprint": lambda: self.rated.power / self.candidates.footprint,
             "power per material mass": lambda: power / self.material_mass,
         }
@@ -228,9 +233,12 @@ def _limits(e: Evaluation) -> Any:
             )
     power, voltage = e.rated.power * c.modules, e.rated.voltage * c.series
     open_voltage = e.opened.voltage * c.series
+    if not job.load.passive:
+        nothing, size = np.zeros(power.size), np.maximum(np.abs(power), 1e-12)
+        yield Limit("power at the leads", "rated", "W", "least", power, nothing, size)
     asked: list[tuple[str, str, str, str, Array, float | None]] = [
         ("required power", "rated", "W", "least", power, require.power),
-        ("required efficiency", "rated", "1", "least", e.rated.efficiency, require.efficiency),
+        ("required efficiency", "rated", "1", "least", e.efficiency, require.efficiency),
         (
             "lower end of the voltage window",
             "rated",

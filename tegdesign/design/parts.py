@@ -22,7 +22,8 @@ ContactResistivity = Annotated[float, Measure("ohm*m^2"), Field(ge=0, lt=1e-4)]
 Ohm = Annotated[float, Measure("ohm"), Field(ge=0)]
 Volt = Annotated[float, Measure("V"), Field(gt=0)]
 Watt = Annotated[float, Measure("W"), Field(gt=0)]
-Count = Annotated[int, Field(ge=1, le=100000)]
+Count = Annotated[int, Field(strict=True, ge=1, le=10000)]
+Gap = Annotated[float, Measure("m", "mm"), Field(ge=1e-5, lt=10)]
 
 
 class Plate(Part):

@@ -57,8 +57,11 @@ def rate(design: Design | str | os.PathLike[str], *, refuse_outside_data: bool =
         )
         for name in without
     ]
-    modules, point = solve(design, asks)
     base = len(asks) - len(without)
+    inlet = design.source.inlet_end()
+    if inlet is not None:
+        asks.append(Ask("open circuit, inlet end", inlet, design.sink, OPEN, design.losses, required=False))
+    modules, point = solve(design, asks)
     states, notes = [], []
     for k, ask in enumerate(asks[:base]):
         if point.converged[k]:
@@ -83,6 +86,11 @@ def rate(design: Design | str | os.PathLike[str], *, refuse_outside_data: bool =
         masses=tuple(_masses(design, pair)),
         cautions=(),
         notes=tuple(notes),
+        inlet_end=(
+            state_of(design, asks[-1], modules, point, len(asks) - 1)
+            if inlet is not None and point.converged[-1]
+            else None
+        ),
     )
     return replace(bare, cautions=cautions(bare))
 
@@ -170,9 +178,14 @@ def _losses(
         if not point.converged[base + k]:
             continue
         power = float(point.power[base + k]) * count
-        yield Loss(name, of_resistance.get(name), of_heat.get(name), power, power - rated.power_W)
+        yield Loss(name, of_resistance.get(name), of_heat.get(name), power, _change(power, rated.power_W))
     most = next(s.power_W for s in states if s.name == "most power")
-    yield Loss("load not matched", None, None, most, most - rated.power_W)
+    yield Loss("load not matched", None, None, most, _change(most, rated.power_W))
+
+
+def _change(power: float, rated: float) -> float:
+    """Return the difference, nothing where it is only rounding."""
+    return power - rated if abs(power - rated) > 1e-12 * abs(rated) else 0.0
 
 
 def _mean_couple(pair: tuple[Material, Material], modules: Modules, mean: float) -> Couple:
@@ -210,7 +223,7 @@ def _sanity(modules: Modules, pair: tuple[Material, Material], rated: State, des
         power_W=power,
         efficiency=efficiency,
         open_circuit_voltage_V=float(whole.seebeck) * (hot - cold) * g.modules_in_series,
-        device_figure_of_merit=float(whole.figure_of_merit) * (hot + cold) / 2,
+        module_figure_of_merit=float(whole.figure_of_merit) * (hot + cold) / 2,
         carnot_efficiency=1 - cold / hot,
         power_deviation=power / rated.power_W - 1 if rated.power_W else 0.0,
         efficiency_deviation=efficiency / rated.efficiency - 1 if rated.efficiency else 0.0,
@@ -218,38 +231,45 @@ def _sanity(modules: Modules, pair: tuple[Material, Material], rated: State, des
 
 
 def _ceiling(design: Design, modules: Modules, pair: tuple[Material, Material], rated: State) -> Ceiling:
-    """Return the power that exchangers and plates allow whatever the legs, from the mean Z of the pair."""
-    g, first = design.module, modules.take([0])
+    """Return the power that the outside of the legs allows, whatever the legs, from ideal legs of this pair.
+
+    A given heat: its best efficiency between the lower service limit and the sink. Else films, interfaces and plates
+    between source and sink. Both with constant properties at the mean of these temperatures.
+    """
+    g, first, (n, p) = design.module, modules.take([0]), pair
     footprint, count = np.array([g.width * g.depth]), np.array([float(g.modules)])
     source, sink = design.source.law(footprint, count), design.sink.law(footprint, count)
-    mean = (rated.T_hot_junction_K + rated.T_cold_junction_K) / 2
-    n, p = pair
-    z = float(
-        (p.seebeck_coefficient(mean) - n.seebeck_coefficient(mean)) ** 2
-        / (
-            np.sqrt(n.resistivity(mean) * n.thermal_conductivity(mean))
-            + np.sqrt(p.resistivity(mean) * p.thermal_conductivity(mean))
-        )
-        ** 2
-    )
-    external = float((source.resistance + sink.resistance + first.resistance_hot + first.resistance_cold)[0])
-    difference = float((source.open_temperature - sink.open_temperature)[0])
-    if external == 0:
-        return Ceiling(
-            None, None, "surfaces are held at the junctions, so nothing outside the legs limits the power"
-        )
-    given = design.source.given_heat
+    given, cold = design.source.given_heat, design.sink.reference_temperature
     if given is not None:
-        hot, cold = rated.T_hot_junction_K, rated.T_cold_junction_K
-        power = float(best_efficiency(z, hot, cold)) * given
-        words = f"all of the {given:.4g} W at the best efficiency of ideal legs of this pair between these junctions"
-    else:
-        power = float(power_ceiling(z, difference, mean, external)) * g.modules
+        hot = min(n.service_limit.value, p.service_limit.value)
+        given = max(given, rated.heat_in_W)  # a leak can also bring heat
+        power = float(best_efficiency(_best_z(n, p, (hot + cold) / 2), hot, cold)) * given
         words = (
-            f"films, interfaces and plates of {external:.4g} K/W per module and {difference:.1f} K in all let the best "
-            "legs of this pair give so much, whatever their size (constant properties, no joints, no bypass)"
+            f"all of the {given:.4g} W at the best efficiency of ideal legs of this pair between the lower service "
+            f"limit, {hot:.0f} K, and the sink, {cold:.0f} K"
         )
+        return Ceiling(power, rated.power_W / power, words)
+    outside = [source.resistance + sink.resistance]
+    outside += [first.thermal_parts(side)[part] for side in ("hot", "cold") for part in ("interface", "substrate")]
+    external = float(np.sum(outside))
+    hot = design.source.reference_temperature
+    if external == 0:
+        return Ceiling(None, None, "surfaces are held at the legs, so nothing outside them limits the power")
+    mean = (hot + cold) / 2
+    power = float(power_ceiling(_best_z(n, p, mean), hot - cold, mean, external)) * g.modules
+    words = (
+        f"films, interfaces and plates of {external:.4g} K/W per module and {hot - cold:.1f} K in all let ideal legs "
+        "of this pair give so much, whatever their size (constant properties; allow 5 %)"
+    )
     return Ceiling(power, rated.power_W / power, words)
+
+
+def _best_z(n: Material, p: Material, mean: float) -> float:
+    """Return Z [1/K] of a pair at its best area ratio; held to the range of the data of each leg."""
+    at = [(m, float(np.clip(mean, *m.range))) for m in (n, p)]
+    seebeck = sum(abs(float(m.seebeck_coefficient(t))) for m, t in at)
+    loss = sum(np.sqrt(float(m.resistivity(t)) * float(m.thermal_conductivity(t))) for m, t in at)
+    return float((seebeck / loss) ** 2)
 
 
 def _masses(design: Design, pair: tuple[Material, Material]) -> Iterator[Mass]:

@@ -35,6 +35,7 @@ class State:
     open_circuit_voltage_V: float
     internal_resistance_ohm: float
     efficiency: float
+    efficiency_of_given_heat: float | None
     heat_in_W: float
     heat_out_W: float
     bypass_heat_W: float
@@ -111,13 +112,16 @@ class DataUse:
 
 @dataclass(frozen=True)
 class Loss:
-    """What one loss takes: share of the internal resistance or of the heat, and the power without it."""
+    """What one loss takes: share of the internal resistance or of the heat, and the power without it.
+
+    ``bypass`` includes ``radiation``. Under a given heat a gain can be negative: what conducts better cools the legs.
+    """
 
     name: str
     share_of_internal_resistance: float | None
     share_of_heat: float | None
     power_without_it_W: float
-    power_lost_W: float
+    power_gained_without_it_W: float
 
 
 @dataclass(frozen=True)
@@ -136,7 +140,7 @@ class Sanity:
     power_W: float
     efficiency: float
     open_circuit_voltage_V: float
-    device_figure_of_merit: float
+    module_figure_of_merit: float
     carnot_efficiency: float
     power_deviation: float
     efficiency_deviation: float
@@ -181,6 +185,7 @@ class Rating:
     masses: tuple[Mass, ...]
     cautions: tuple[Caution, ...]
     notes: tuple[str, ...]
+    inlet_end: State | None = None  # open circuit of the module that meets a stream first
 
     def state(self, name: str) -> State:
         """Return a state by its name: ``rated``, ``most power``, ``best efficiency``, ``open circuit`` ..."""
@@ -255,6 +260,7 @@ class Rating:
                 "fill_factor": g.fill_factor,
             },
             "states": [asdict(s) for s in self.states],
+            "inlet_end_open_circuit": asdict(self.inlet_end) if self.inlet_end else None,
             "checks": [{**asdict(c), "margin": c.margin} for c in self.checks],
             "data_range": [asdict(d) for d in self.data],
             "losses": [asdict(item) for item in self.losses],

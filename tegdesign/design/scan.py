@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import os
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import product
 from typing import TYPE_CHECKING, Any
 
@@ -24,13 +24,24 @@ if TYPE_CHECKING:
 
 @dataclass(frozen=True)
 class Sweep:
-    """States against one or two quantities; ``x`` holds their values, one row a state, in the units ``x_unit``."""
+    """States against one or two quantities; ``x`` holds their values, one row a state, in the units ``x_unit``.
+
+    Beside each state: kelvins outside the measured data, the hot junction when the load is lost, and the room that the
+    hotter of both leaves to the lower service limit of the legs.
+    """
 
     x_name: tuple[str, ...]
     x_unit: tuple[str, ...]
     x: tuple[tuple[float, ...], ...]
     states: tuple[State, ...]
-    K_outside_data: tuple[float, ...]
+    outside_data_K: tuple[float, ...]
+    T_hot_junction_open_K: tuple[float, ...]
+    room_to_service_limit_K: tuple[float, ...]
+
+    @property
+    def met(self) -> bool:
+        """Whether no state, loaded or open, passes a service limit."""
+        return min(self.room_to_service_limit_K) >= 0
 
     def column(self, quantity: str) -> list[float]:
         """Return a quantity of all states, by its name with unit.
@@ -49,8 +60,14 @@ class Sweep:
         """Return one mapping a state: the varied quantities first, then the results, names with units."""
         names = [f"{n}_{u}" if u else n for n, u in zip(self.x_name, self.x_unit, strict=True)]
         return [
-            {**dict(zip(names, x, strict=True)), **s.to_row(), "K_outside_data": outside}
-            for x, s, outside in zip(self.x, self.states, self.K_outside_data, strict=True)
+            {
+                **dict(zip(names, x, strict=True)),
+                **s.to_row(),
+                "T_hot_junction_open_K": self.T_hot_junction_open_K[k],
+                "room_to_service_limit_K": self.room_to_service_limit_K[k],
+                "outside_data_K": self.outside_data_K[k],
+            }
+            for k, (x, s) in enumerate(zip(self.x, self.states, strict=True))
         ]
 
     def to_frame(self) -> pd.DataFrame:
@@ -93,7 +110,7 @@ def curve(design: Design | str | os.PathLike[str], points: int = 25) -> Sweep:
     """Return states from the open circuit towards the short circuit, evenly in current; junctions follow the load.
 
     Ends before the short circuit where a temperature maximum forms inside a leg. States outside the measured data
-    are not refused here: ``K_outside_data`` tells by how many kelvin the end values are held.
+    are not refused here: ``outside_data_K`` tells by how many kelvin the end values are held.
 
     Raises
     ------
@@ -116,11 +133,6 @@ def curve(design: Design | str | os.PathLike[str], points: int = 25) -> Sweep:
     return _sweep([design] * points, asks, ("current_set",), ("A",), [(i,) for i in currents], refuse=False)
 
 
-def voltage_current(design: Design | str | os.PathLike[str], points: int = 25) -> tuple[State, ...]:
-    """Return the states of ``curve``."""
-    return curve(design, points).states
-
-
 def against_hot(
     design: Design | str | os.PathLike[str], temperatures_K: Sequence[float] | None = None, points: int = 9
 ) -> Sweep:
@@ -128,13 +140,12 @@ def against_hot(
 
     Without a list: from a quarter of the way above the sink up to the source's own temperature. For a fixed heat
     the heat is varied instead, from a quarter to the whole of it. States outside the measured data are not refused
-    here: ``K_outside_data`` tells by how many kelvin the end values are held.
+    here: ``outside_data_K`` tells by how many kelvin the end values are held.
     """
-    from tegdesign.system.boundary import FixedHeat
-
     design = as_design(design)
-    if isinstance(design.source, FixedHeat):
-        heats = np.linspace(0.25, 1.0, points) * design.source.heat
+    given = design.source.given_heat
+    if given is not None:
+        heats = np.linspace(0.25, 1.0, points) * given
         sources: list[AnyBoundary] = [design.source.model_copy(update={"heat": float(q)}) for q in heats]
         name, unit, x = "source_heat", "W", [(float(q),) for q in heats]
     else:
@@ -201,11 +212,15 @@ def _sweep(
     refuse: bool = True,
 ) -> Sweep:
     """Solve; refuse states that leave the data of the materials farther than the design allows, or only tell."""
-    modules, point = solve_all(designs, asks)
-    outside = np.zeros(len(asks))
+    count = len(asks)
+    opened = [replace(ask, load=OPEN) for ask in asks]
+    modules, point = solve_all([*designs, *designs], [*asks, *opened])
+    outside, room = np.zeros(count), np.full(count, np.inf)
+    open_hot = point.hot_junction[count:]
     for leg in modules.materials:
-        below, above = leg.outside(point.cold_junction, point.hot_junction)
+        below, above = leg.outside(point.cold_junction[:count], point.hot_junction[:count])
         outside = np.maximum(outside, np.maximum(below, above))
+        room = np.minimum(room, leg.service_limit.value - np.maximum(point.hot_junction[:count], open_hot))
     allowed = np.array([d.materials.hold_outside_data for d in designs])
     if refuse and np.any(outside > allowed + 1e-9):
         k = int(np.argmax(outside - allowed))
@@ -214,13 +229,16 @@ def _sweep(
             f"junctions at {point.hot_junction[k]:.1f} K and {point.cold_junction[k]:.1f} K leave the measured data by "
             f'{outside[k]:.1f} K; narrow the table or set materials.hold_outside_data = "{np.ceil(outside[k]):.0f} K"'
         )
-    found = [int(k) for k in np.flatnonzero(point.converged)]  # only states that need not exist can be missing here
+    # only states that need not exist can be missing here
+    found = [int(k) for k in np.flatnonzero(point.converged[:count])]
     return Sweep(
         names,
         units,
         tuple(tuple(x[k]) for k in found),
         tuple(state_of(designs[k], asks[k], modules, point, k) for k in found),
         tuple(float(outside[k]) for k in found),
+        tuple(float(open_hot[k]) for k in found),
+        tuple(float(room[k]) for k in found),
     )
 
 

@@ -68,6 +68,8 @@ class Space:
         low, high = np.log(self.limits.leg_length)
         length = np.exp(low + u[:, 0] * (high - low))
         root = np.sqrt(self.ratio[which] * np.exp((2 * u[:, 1] - 1) * _RATIO_SPAN))
+        thin, thick = self.limits.leg_side
+        root = np.clip(root, thin / thick, thick / thin)
         if couples is None:
             span = np.log(self.most_couples / self.least_couples)
             couples = self.least_couples * np.exp(u[:, 3] * span)
@@ -78,7 +80,7 @@ class Space:
             pitch - self.limits.gap, self.limits.leg_side[1] * (1 + root) / (2 * np.maximum(root, 1.0))
         )
         largest = np.minimum(
-            largest, (pitch - self.limits.gap / 2) * (1 + root) / (2 * np.maximum(root, 1.0))
+            largest, (pitch - self.limits.corner) * (1 + root) / (2 * np.maximum(root, 1.0))
         )
         smallest = np.minimum(smallest, largest)
         side = np.exp(np.log(smallest) + u[:, 2] * np.log(largest / smallest))
@@ -167,8 +169,7 @@ def search(
         [
             (length, 0.5, side, couples)
             for length in (0.05, 0.22, 0.39, 0.56, 0.73, 0.9)
-            for side in (0.35, 0.85)
-            for couples in (0.45, 0.8)
+            for side, couples in ((0.35, 0.45), (0.35, 0.8), (0.85, 0.45), (0.85, 0.8), (1.0, 1.0))
         ]
     )
     best = _Incumbent(count)
@@ -223,7 +224,7 @@ class _Incumbent:
 
 
 class _Outcome(NamedTuple):
-    """What a round found, arrays (B, ...): score, logarithm of the aim, violations of all limits, V a couple, leg cut."""
+    """What a round found, arrays (B, ...): score, logarithm of the aim, violations of limits, V a couple, leg cut."""
 
     score: Array
     aim: Array

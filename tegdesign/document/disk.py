@@ -18,15 +18,15 @@ def read_text(path: str | os.PathLike[str]) -> str:
         The file is missing, may not be read, is a folder, or is not text.
     """
     try:
-        text = Path(path).read_text(encoding="utf-8")
+        text = Path(path).read_text(encoding="utf-8-sig")
     except FileNotFoundError as error:
         raise InputError(f"{path}: no such file") from error
     except IsADirectoryError as error:
         raise InputError(f"{path}: is a folder, expected a file") from error
     except UnicodeDecodeError as error:
         raise InputError(f"{path}: is not a UTF-8 text file (byte {error.start})") from error
-    except OSError as error:
-        raise InputError(f"{path}: cannot be read ({error.strerror})") from error
+    except (OSError, RuntimeError) as error:
+        raise InputError(f"{str(path)[:200]}: cannot be read ({error})") from error
     if "\0" in text:
         raise InputError(f"{path}: is not a text file (byte {text.index(chr(0))} is zero)")
     return text
@@ -71,8 +71,13 @@ def check_place(path: str | os.PathLike[str]) -> None:
     InputError
         The target is a folder, or its folder is missing or may not be written to.
     """
-    folder = Path(path).resolve().parent
-    if Path(path).is_dir():
+    try:
+        folder = Path(path).resolve().parent
+        is_folder = Path(path).is_dir()
+        Path(path).exists()
+    except (OSError, RuntimeError) as error:  # a name too long, a link to itself, a folder that is gone
+        raise InputError(f"{str(path)[:200]}: cannot be written ({error})") from error
+    if is_folder:
         raise InputError(f"{path}: is a folder, expected a file to write")
     if not folder.is_dir():
         reason = "is no folder" if folder.exists() else "does not exist"

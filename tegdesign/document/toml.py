@@ -27,6 +27,8 @@ def parse_toml(text: str, where: str) -> dict[str, Any]:
         line = match[1] if match else str(text.count("\n") + 1)
         reason = re.sub(r"\s*\(at .*\)$", "", str(error))
         raise InputError(f"{where}:{line}: not valid TOML, {reason[:1].lower()}{reason[1:]}") from error
+    except (RecursionError, ValueError) as error:  # brackets or digits by the thousand
+        raise InputError(f"{where}: not usable TOML, {error}") from error
 
 
 _HEADER = re.compile(r"\s*(\[\[?)\s*([^\[\]]+?)\s*\]\]?\s*(?:#.*)?$")

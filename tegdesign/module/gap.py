@@ -41,7 +41,8 @@ def conduction(
     k = k300 (T/300 K)^n, exact for the power law; negative when hot is below cold.
     """
     h, c, k, n = (np.asarray(v, dtype=float) for v in (hot, cold, conductivity, exponent))
-    kh, kc = k * (h / 300.0) ** n, k * (c / 300.0) ** n
+    with np.errstate(invalid="ignore", over="ignore"):  # iterations may wander; the solver judges what it gets
+        kh, kc = k * (h / 300.0) ** n, k * (c / 300.0) ** n
     return np.asarray((kh * h - kc * c) / (n + 1)), np.asarray(kh), np.asarray(-kc)
 
 

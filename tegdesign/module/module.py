@@ -137,7 +137,7 @@ class Modules:
         metal = self.couples * (patches[0] + patches[1])
         return {
             "interface": np.asarray(getattr(self, f"interface_{side}") / self.footprint),
-            "substrate": np.asarray(thickness / (conductivity * np.asarray(self.footprint))),
+            "substrate": np.asarray(thickness / (conductivity * 2 * self.couples * cell)),
             "spreading": self.spreading * spread_n * spread_p / (np.where(both > 0, both, 1.0) * self.couples),
             "electrode": np.asarray(self.electrode_thickness / (self.electrode_conductivity * metal)),
             "joint": np.asarray(self.contact_thermal / self.leg_area),

@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 from tegdesign.errors import InputError
 
 if TYPE_CHECKING:
+    from tegdesign.design.design import Design
     from tegdesign.design.rating import Rating
 
 SUFFIXES = (".pdf", ".md")
@@ -28,17 +29,22 @@ def check_suffix(path: str | os.PathLike[str]) -> str:
     return suffix
 
 
-def write_sheet(rating: Rating, path: str | os.PathLike[str]) -> None:
-    """Write the sheet of a rating whole or not at all, as PDF or Markdown by the suffix of the path.
+def write_sheet(rating: Rating | Design | str | os.PathLike[str], path: str | os.PathLike[str]) -> None:
+    """Write the sheet of a rating, a design or a design file, whole or not at all, as PDF or Markdown by the suffix.
 
     Raises
     ------
     InputError
         Another suffix than .pdf or .md, or a place that cannot be written to.
     """
+    from tegdesign.design.rate import rate
+    from tegdesign.design.rating import Rating
     from tegdesign.document import write_whole
 
-    if check_suffix(path) == ".pdf":
+    suffix = check_suffix(path)
+    if not isinstance(rating, Rating):
+        rating = rate(rating)
+    if suffix == ".pdf":
         from tegdesign.sheet.pdf import sheet_pdf
 
         write_whole(path, sheet_pdf(rating))

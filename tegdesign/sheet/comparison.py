@@ -5,7 +5,7 @@ from __future__ import annotations
 import os
 
 from tegdesign.design.compare import Comparison, aimed
-from tegdesign.sheet.drawing import check_ending, save_drawing
+from tegdesign.sheet.drawing import check_ending, plain, save_drawing
 from tegdesign.sheet.sizing import AIM_UNIT
 from tegdesign.sheet.table import table_text
 
@@ -43,7 +43,7 @@ def comparison_report(result: Comparison, top: int = 20) -> str:
             ]
         )
         said = [f"binds: {r.limit}"] if r.limit else []
-        said += [f"end values held by {r.K_outside_data:.1f} K"] if r.K_outside_data > 0 else []
+        said += [f"end values held by {r.outside_data_K:.1f} K"] if r.outside_data_K > 0 else []
         said += [f"hazards: {r.hazards}"] if r.hazards else []
         notes.append(f"  {k}: " + "; ".join(said or ["nothing binds"]))
     lines += [table_text(HEAD, rows, range(3, len(HEAD))), ""]
@@ -98,5 +98,5 @@ def draw_comparison(result: Comparison, path: str | os.PathLike[str], most: int 
         axes.grid(axis="x", color="0.88", linewidth=0.6)
         axes.set_axisbelow(True)
     pale = "" if all(r.met for r in ranks) else " (pale: misses a requirement)"
-    drawing.suptitle(f"{result.brief.title}: pairs at their own best geometry{pale}", fontsize=10)
+    drawing.suptitle(f"{plain(result.brief.title)}: pairs at their own best geometry{pale}", fontsize=10)
     save_drawing(drawing, path)

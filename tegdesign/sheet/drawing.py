@@ -16,6 +16,13 @@ if TYPE_CHECKING:
 FORMATS = (".png", ".pdf", ".svg")
 
 
+def plain(text: str) -> str:
+    """Return a text that a drawing shows letter by letter: no formulas, no characters without a shape."""
+    from tegdesign.sheet.page import printable
+
+    return printable(text).replace("$", r"\$")
+
+
 def check_ending(path: str | os.PathLike[str]) -> str:
     """Return the format of a figure file.
 

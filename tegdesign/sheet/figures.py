@@ -52,7 +52,7 @@ def against_hot(sweep: Sweep, axes: Axes) -> None:
     lines += beside.plot(
         x, efficiency, "s--", color="0.3", markerfacecolor="white", markersize=4, label="efficiency"
     )
-    held = [k for k, outside in enumerate(sweep.K_outside_data) if outside > 0]
+    held = [k for k, outside in enumerate(sweep.outside_data_K) if outside > 0]
     if held:
         lines += axes.plot(
             [x[k] for k in held],

@@ -178,17 +178,17 @@ def losses(rating: Rating) -> Section:
             percent(item.share_of_internal_resistance),
             percent(item.share_of_heat),
             amount(item.power_without_it_W, "W"),
-            amount(_negligible(item.power_lost_W, rating.rated.power_W), "W"),
+            amount(_negligible(item.power_gained_without_it_W, rating.rated.power_W), "W"),
         )
         for item in rating.losses
     ]
-    heads = ("loss", "of internal resistance", "of heat", "power without it", "power lost")
+    heads = ("loss", "of internal resistance", "of heat", "power without it", "gain without it")
     off = rating.design.losses.off
     said = [f"Switched off and so not counted: {', '.join(off)}."] if off else []
     return section(
         "Where heat and power are lost",
         table(heads, rows),
-        words("Each line leaves out one loss alone; the losses do not add up.", *said),
+        words("Each line leaves out one loss alone; they do not add up. Bypass includes radiation.", *said),
     )
 
 
@@ -231,8 +231,9 @@ def sanity(rating: Rating) -> Section:
         "Closed-form check",
         table(("at the rated junctions", "closed form", "full model", "difference"), compared),
         words(
-            "Closed form: constant properties at the mean junction temperature. Device figure of merit ZT "
-            f"{number(s.device_figure_of_merit, 3)}, Carnot efficiency between the junctions "
+            "Closed form: constant properties at the mean junction temperature. ZT of the module there, joints and "
+            "bypass included, "
+            f"{number(s.module_figure_of_merit, 3)}, Carnot efficiency between the junctions "
             f"{percent(s.carnot_efficiency)}."
         ),
     )

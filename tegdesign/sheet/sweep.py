@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 from tegdesign.design.design import Design
 from tegdesign.design.scan import Sweep
-from tegdesign.sheet.drawing import check_ending, save_drawing
+from tegdesign.sheet.drawing import check_ending, plain, save_drawing
 from tegdesign.sheet.table import table_text
 
 if TYPE_CHECKING:
@@ -39,11 +39,13 @@ def sweep_table(sweep: Sweep, of: str = "") -> str:
     names = [
         f"{n.replace('_', ' ')} [{u}]" if u else n for n, u in zip(sweep.x_name, sweep.x_unit, strict=True)
     ]
+    beside = zip(sweep.x, sweep.states, sweep.T_hot_junction_open_K, sweep.room_to_service_limit_K, strict=True)
     rows = [
-        [*(f"{v:.6g}" for v in x), *(_text(getattr(state, key), key) for key, _ in shown)]
-        for x, state in zip(sweep.x, sweep.states, strict=True)
+        [*(f"{v:.6g}" for v in x), *(_text(getattr(state, key), key) for key, _ in shown), f"{hot:.1f}", f"{room:.1f}"]
+        for x, state, hot, room in beside
     ]
-    text = table_text([*names, *(label for _, label in shown)], rows, range(len(names) + len(shown)))
+    heads = [*names, *(label for _, label in shown), "T_hot_j open [K]", "room [K]"]
+    text = table_text(heads, rows, range(len(heads)))
     return text + _held(sweep)
 
 
@@ -58,10 +60,17 @@ def _cross_table(sweep: Sweep, of: str) -> str:
 
 
 def _held(sweep: Sweep) -> str:
-    worst = max(sweep.K_outside_data)
-    if worst <= 0:
-        return "\n"
-    return f"\nnote: end values of material data held by up to {worst:.1f} K outside the measured range\n"
+    lines = [""]
+    if max(sweep.outside_data_K) > 0:
+        worst = max(sweep.outside_data_K)
+        lines.append(f"note: end values of material data held by up to {worst:.1f} K outside the measured range")
+    if not sweep.met:
+        hot = sum(room < 0 for room in sweep.room_to_service_limit_K)
+        lines.append(
+            f"SERVICE LIMIT PASSED in {hot} of {len(sweep.states)} states, loaded or open, by up to "
+            f"{-min(sweep.room_to_service_limit_K):.1f} K"
+        )
+    return "\n".join(lines) + "\n"
 
 
 def draw_curve(sweep: Sweep, design: Design, path: str | os.PathLike[str]) -> None:
@@ -75,7 +84,7 @@ def draw_curve(sweep: Sweep, design: Design, path: str | os.PathLike[str]) -> No
     current = sweep.column("current_A")
     lines = left.plot(current, sweep.column("voltage_V"), "-", color="black", label="voltage")
     lines += right.plot(current, sweep.column("power_W"), "--", color="0.35", label="power")
-    left.set(xlabel="current [A]", ylabel="voltage [V]", title=design.title, xlim=(0, None), ylim=(0, None))
+    left.set(xlabel="current [A]", ylabel="voltage [V]", title=plain(design.title), xlim=(0, None), ylim=(0, None))
     right.set(ylabel="power [W]", ylim=(0, None))
     left.legend(lines, [str(line.get_label()) for line in lines], loc="lower center")
     left.grid(color="0.88", linewidth=0.6)
@@ -94,7 +103,7 @@ def draw_map(sweep: Sweep, design: Design, of: str, path: str | os.PathLike[str]
     first = list(dict.fromkeys(x[0] for x in sweep.x))
     if len(sweep.x_name) == 1:
         axes.plot(first, values, "o-", color="black", markersize=4)
-        axes.set(xlabel=label[0], ylabel=of, title=design.title)
+        axes.set(xlabel=label[0], ylabel=of, title=plain(design.title))
         axes.grid(color="0.88", linewidth=0.6)
     else:
         second = list(dict.fromkeys(x[1] for x in sweep.x))
@@ -107,6 +116,6 @@ def draw_map(sweep: Sweep, design: Design, of: str, path: str | os.PathLike[str]
         grid = np.array(values).reshape(len(first), len(second))
         shade = axes.contourf(second, first, grid, levels=12, cmap="Greys")
         axes.clabel(axes.contour(second, first, grid, levels=6, colors="black", linewidths=0.8), fontsize=8)
-        axes.set(xlabel=label[1], ylabel=label[0], title=design.title)
+        axes.set(xlabel=label[1], ylabel=label[0], title=plain(design.title))
         drawing.colorbar(shade, ax=axes, label=of)
     save_drawing(drawing, path)

@@ -33,7 +33,7 @@ def aim_and_room(brief, job, x):
     room = [-limit.violation for limit in e.limits]
     room += [
         (c.pitch - (c.side_n + c.side_p) / 2) / limits.gap - 1,
-        (c.pitch - limits.gap / 2) / thick - 1,
+        (c.pitch - limits.corner) / thick - 1,
         limits.slenderness * thin / c.leg_length - 1,
     ]
     return np.array([np.log(np.maximum(e.objective, 1e-12)), *room])

@@ -57,8 +57,8 @@ def test_a_loss_is_what_switching_it_off_brings(design, rating):
             continue
         without = rate(design(keys={f"losses.{loss.name}": False})).rated.power_W
         assert_allclose(loss.power_without_it_W, without, rtol=1e-9)
-        assert_allclose(loss.power_lost_W, without - rating.rated.power_W, rtol=0, atol=1e-9 * without)
-        assert loss.power_lost_W >= -1e-9 * without
+        assert_allclose(loss.power_gained_without_it_W, without - rating.rated.power_W, rtol=0, atol=1e-9 * without)
+        assert loss.power_gained_without_it_W >= -1e-9 * without
 
 
 def test_the_ceiling_is_above_and_the_closed_form_is_near(rating):

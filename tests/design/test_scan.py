@@ -3,7 +3,8 @@ import pytest
 from numpy.testing import assert_allclose
 
 from tegdesign.design.rate import rate
-from tegdesign.design.scan import against_hot, map_over, operating_table, voltage_current
+from tegdesign.design.scan import against_hot, map_over, operating_table
+from tegdesign.design.scan import curve as curve_of
 from tegdesign.errors import DataRangeError, InputError
 from tegdesign.system.load import Matched, Resistance
 
@@ -31,7 +32,7 @@ def test_table_refuses_states_outside_the_data(design):
 
 
 def test_voltage_current_runs_from_open_to_short_circuit(design):
-    curve = voltage_current(design(), points=9)
+    curve = curve_of(design(), points=9).states
     rating = rate(design())
     assert_allclose(curve[0].voltage_V, rating.state("open circuit").voltage_V, rtol=1e-10)
     assert_allclose(curve[-1].current_A, rating.state("short circuit").current_A, rtol=1e-10)

@@ -83,10 +83,10 @@ def test_design_file_reproduces_every_number(name, sized):
 
 # Keys whose numbers have no unit, or have it beside them under "unit".
 BARE = {
-    "efficiency", "efficiency_deviation", "carnot_efficiency", "device_figure_of_merit", "fill_factor", "load_ratio",
+    "efficiency", "efficiency_deviation", "carnot_efficiency", "module_figure_of_merit", "fill_factor", "load_ratio",
     "power_deviation", "share_of_heat", "share_of_internal_resistance", "share_reached", "value", "limit", "margin",
     "aimed_efficiency", "aimed_before_rounding_efficiency", "area_ratio_n_to_p", "penalty_of_equal_areas",
-    "compatibility_spread", "couples_per_module", "limits.slenderness", "K_outside_data",
+    "compatibility_spread", "couples_per_module", "limits.slenderness", "outside_data_K",
 }  # fmt: skip
 UNITS = ("_W", "_V", "_A", "_ohm", "_K", "_m", "_m3", "_kg", "_W_per_m2", "_A_per_m2", "_W_per_kg", "_K_per_W")
 

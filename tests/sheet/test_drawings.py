@@ -153,7 +153,7 @@ def test_power_and_efficiency_against_the_source(plain, ratings):
     assert_allclose(
         beside.get_lines()[0].get_ydata()[-1], 100 * plain.state("most power").efficiency, rtol=1e-6
     )
-    assert len(held.get_xdata()) == sum(outside > 0 for outside in sweep.K_outside_data) > 0
+    assert len(held.get_xdata()) == sum(outside > 0 for outside in sweep.outside_data_K) > 0
     assert power.get_marker() != beside.get_lines()[0].get_marker()
     other = axes_of()
     figures.against_hot(against_hot(ratings["tiny"].design, points=3), other)

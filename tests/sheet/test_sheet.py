@@ -2,6 +2,7 @@
 
 import io
 import os
+import re
 import subprocess
 import sys
 from dataclasses import replace
@@ -51,7 +52,8 @@ def test_pages_of_a4(sheets, name):
 @pytest.mark.parametrize("name", ["plain", "heavy", "tiny"])
 def test_everything_is_on_it(ratings, sheets, name):
     rating, reader = ratings[name], sheets[name]
-    text = words(reader)
+    foot = re.escape(squeezed(rating.design.title)[:20]) + r".{0,120}?;noconformitywithanystandardisclaimedpage\d/\d"
+    text = re.sub(foot, "", words(reader))  # a caution may run on over a page
     s = rating.rated
     expected = [
         rating.design.title,

@@ -2,6 +2,7 @@ import numpy as np
 import pytest
 from numpy.testing import assert_allclose
 
+from tegdesign.errors import InputError
 from tegdesign.system.boundary import Film, FixedHeat, Stream, Surface
 from tegdesign.system.boundary.base import fin_factor
 from tegdesign.system.law import join, law
@@ -88,12 +89,17 @@ def test_fixed_heat_without_leak_has_no_open_temperature():
 
 
 @pytest.mark.parametrize(
-    "boundary", [Surface(temperature="500 K"), film(), stream(), FixedHeat(heat="9 W", leak_conductance="1 W/K")]
+    "boundary", [Surface(temperature="500 K"), film(), stream()]
 )
 def test_reference_temperature_can_be_moved(boundary):
     moved = boundary.at(350.0)
     assert moved.reference_temperature == 350.0
     assert moved.at(boundary.reference_temperature) == boundary
+
+
+def test_a_given_heat_has_no_temperature_to_move():
+    with pytest.raises(InputError, match=r"no temperature that could be set to 350 K.*source\.heat"):
+        FixedHeat(heat="9 W", leak_conductance="1 W/K").at(350.0)
 
 
 def test_joined_laws_keep_their_order():

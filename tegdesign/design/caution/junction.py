@@ -13,6 +13,7 @@ from tegdesign.material.material import Stated
 
 CLOSE = 10.0
 RISE = 5.0
+HOPELESS = 2000.0
 STATES = ("rated", "open circuit")
 
 
@@ -56,6 +57,26 @@ def near_service_limit(rating: Rating) -> Iterator[Caution]:
             )
 
 
+def inlet_end(rating: Rating) -> Iterator[Caution]:
+    """Warn that the module at the inlet of a stream is hotter than the mean plate that the rating stands for."""
+    state = rating.inlet_end
+    if state is None:
+        return
+    hot, mean = state.T_hot_junction_K, rating.state("open circuit").T_hot_junction_K
+    service = min((m.service_limit for m in rating.materials), key=lambda limit: limit.value)
+    if hot - mean > RISE:
+        over = hot - service.value
+        yield caution(
+            "inlet-end",
+            "The module at the stream's inlet is the hottest",
+            f"{both(hot)} open circuit, {kelvin(hot - mean)} above the mean plate",
+            stated(service),
+            f"The stream counts as one plate here. Its first module sees the inlet temperature: it "
+            f"is {kelvin(abs(over))} {'above' if over > 0 else 'below'} the lower service limit. Protect it for that.",
+            "open-circuit state of this design with the film at the inlet temperature",
+        )
+
+
 def loss_of_load(rating: Rating) -> Iterator[Caution]:
     """Warn of a hot junction that rises when the load is lost."""
     loaded, opened = rating.rated.T_hot_junction_K, rating.state("open circuit").T_hot_junction_K
@@ -79,7 +100,7 @@ def coolant_loss(rating: Rating) -> Iterator[Caution]:
     reached = float(law.open_temperature[0])
     m = min(rating.materials, key=lambda m: m.service_limit.value)
     if reached > m.service_limit.value:
-        words = both(reached) if np.isfinite(reached) else "no bound: the heat is fixed and leaks nowhere"
+        words = both(reached) if reached < HOPELESS else "no bound that any material stands: the heat is given"
         yield caution(
             "coolant-loss",
             "Loss of coolant overheats the module",

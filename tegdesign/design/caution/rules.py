@@ -12,6 +12,7 @@ Rule = Callable[[Rating], Iterable[Caution]]
 RULES: tuple[Rule, ...] = (
     junction.over_service_limit,
     junction.near_service_limit,
+    junction.inlet_end,
     junction.loss_of_load,
     junction.coolant_loss,
     junction.air,

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from abc import abstractmethod
-from typing import Annotated
+from typing import Annotated, Any
 
 import numpy as np
 from pydantic import Field
@@ -34,6 +34,10 @@ class Boundary(Part):
     @property
     def given_heat(self) -> float | None:
         """Heat that is all there is [W], None where the heat follows from temperatures."""
+        return None
+
+    def inlet_end(self) -> Any:
+        """Return the boundary as the module at its hot end sees it, None where all modules see the same."""
         return None
 
     @abstractmethod

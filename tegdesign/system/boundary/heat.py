@@ -6,6 +6,7 @@ from typing import Annotated, Literal
 
 from pydantic import Field
 
+from tegdesign.errors import InputError
 from tegdesign.material.curve import Array
 from tegdesign.quantity import Measure
 from tegdesign.system.boundary.base import Boundary, Positive, Temperature, spread
@@ -36,8 +37,11 @@ class FixedHeat(Boundary):
         return self.heat
 
     def at(self, temperature: float) -> FixedHeat:
-        """Return the source in another ambient temperature [K]."""
-        return self.model_copy(update={"ambient_temperature": temperature})
+        """Refuse: the temperature of a given heat is a result."""
+        raise InputError(
+            f"a source of kind 'heat' has no temperature that could be set to {temperature:.6g} K, it is a result; "
+            'vary source.heat instead: --map "source.heat=100 W, 200 W"'
+        )
 
     def stations(self, face: Array, heat: Array) -> list[tuple[str, Array]]:
         """Return the ambient that the leak goes to."""

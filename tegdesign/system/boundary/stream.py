@@ -10,6 +10,7 @@ from pydantic import Field
 from tegdesign.material.curve import Array
 from tegdesign.quantity import Measure
 from tegdesign.system.boundary.base import Boundary, Positive, Temperature, fin_factor, spread
+from tegdesign.system.boundary.film import Film
 from tegdesign.system.law import Law, law
 
 
@@ -45,6 +46,11 @@ class Stream(Boundary):
     def reference_temperature(self) -> float:
         """Inlet temperature [K]."""
         return self.inlet_temperature
+
+    def inlet_end(self) -> Film:
+        """Return the film at the inlet, where the stream has not cooled yet."""
+        shared = {name: getattr(self, name) for name in ("coefficient", "area", "area_enlargement", "fin_efficiency")}
+        return Film.model_construct(temperature=self.inlet_temperature, **shared)
 
     def at(self, temperature: float) -> Stream:
         """Return the stream with another inlet temperature [K]."""

@@ -67,15 +67,13 @@ class MixedLoads(NamedTuple):
 
 def mixed(laws: Sequence[LoadLaw]) -> MixedLoads:
     """Return one batch made of several, in their order."""
-    sizes = [law.number.size for law in laws]
-    total = sum(sizes)
-    spread_out, start = [], 0
-    for law, size in zip(laws, sizes, strict=True):
-        number = np.ones(total)
-        number[start : start + size] = law.number
-        spread_out.append(law._replace(number=number))
-        start += size
-    return MixedLoads(tuple(spread_out), np.repeat(np.arange(len(laws)), sizes))
+    kinds = list(dict.fromkeys(law.condition for law in laws))  # a few, however many laws
+    first = [next(law for law in laws if law.condition is kind) for kind in kinds]
+    numbers_ = np.concatenate([law.number for law in laws])
+    which = np.concatenate([np.full(law.number.size, kinds.index(law.condition), dtype=np.intp) for law in laws])
+    return MixedLoads(
+        tuple(law._replace(number=np.where(which == k, numbers_, 1.0)) for k, law in enumerate(first)), which
+    )
 
 
 class Load(Part):
@@ -87,6 +85,11 @@ class Load(Part):
     def adapts(self) -> bool:
         """Whether the load finds its own current, so that it does not matter how modules are joined."""
         return False
+
+    @property
+    def passive(self) -> bool:
+        """Whether the load can only take power, never drive current through the generator."""
+        return True
 
     @abstractmethod
     def law(self, series: Array, parallel: Array) -> LoadLaw:

@@ -23,6 +23,11 @@ class GivenCurrent(Load):
     kind: Literal["current"] = "current"
     current: Annotated[float, Measure("A"), Field(ge=0)]
 
+    @property
+    def passive(self) -> bool:
+        """A current sink can be asked for more than the short-circuit current."""
+        return False
+
     def law(self, series: Array, parallel: Array) -> LoadLaw:
         """Return I = current / parallel for each module."""
         return LoadLaw(as_given, numbers(self.current / parallel, series), fixed=True)
