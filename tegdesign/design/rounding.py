@@ -14,8 +14,8 @@ from tegdesign.design.search import Space, score
 from tegdesign.errors import InputError
 from tegdesign.material.curve import Array
 
-_GRIDS = 50  # grids tried for each free answer
-_FINALISTS = 10  # of them that are improved step by step
+_GRIDS = 30  # grids tried for each free answer
+_FINALISTS = 8  # of them that are improved step by step
 _SHARES = (1.0, 0.8)  # of the widest legs that the pitch leaves room for
 _LENGTHS = (0.75, 1.0, 1.3)  # times the length that keeps the thermal resistance of the legs
 
@@ -94,7 +94,7 @@ def _first(brief: Brief, space: Space, free: Evaluation, k: int) -> Iterator[Row
             used = most**2 * columns * rows / (space.width * space.depth)
             grids.append((0.25 * abs(np.log(made / couples)) - np.log(used), columns, rows, most))
     for _, columns, rows, most in sorted(grids)[:_GRIDS]:
-        for share, towards in product((*_SHARES, own), (1.0, 0.5, 0.0)):  # sides apart as they were, or less
+        for share, towards in product((*_SHARES, own), (1.0, 0.4)):  # sides apart as they were, or less
             mean, root = share * (most - limits.gap), (sides[0] / sides[1]) ** towards
             ideal = (2 * mean * root / (1 + root), 2 * mean / (1 + root))
             sn, sp = (float(np.clip(np.floor(s / step + 1e-6), least, most_steps)) * step for s in ideal)
@@ -136,24 +136,20 @@ def _assemble(brief: Brief, space: Space, like: Candidates, rows: Iterable[Row])
     Each at the widest pitch of its grid, and also on the smallest plate where that is much smaller.
     """
     limits, step = brief.limits, brief.workshop.gap_step
-    kept = []
-    for length, sn, sp, columns, grid_rows in rows:
-        mean = (sn + sp) / 2
-        most = min(space.width / columns, space.depth / grid_rows)
-        widest = tidy(np.floor((most - mean) / step + 1e-6) * step)
-        closest = tidy(np.ceil(max(limits.gap, abs(sn - sp) / 2 + limits.corner) / step - 1e-6) * step)
-        for gap in (widest, closest) if mean + widest > 1.05 * (mean + closest) else (widest,):
-            fits = (
-                gap >= max(limits.gap, 1e-3 * step) - 1e-9
-                and limits.leg_side[0] - 1e-9 <= min(sn, sp)
-                and max(sn, sp) <= min(limits.leg_side[1], mean + gap - limits.corner) + 1e-9
-                and limits.leg_length[0] - 1e-9 <= length <= limits.leg_length[1] + 1e-9
-                and length <= limits.slenderness * min(sn, sp) + 1e-9
-            )
-            if fits:
-                kept.append((tidy(length), tidy(sn), tidy(sp), tidy(mean + gap), columns, grid_rows))
-    length_, sn_, sp_, pitch, columns_, rows_ = np.array(kept, dtype=float).reshape(-1, 6).T
-    edge, count = 2 * limits.edge_margin, len(kept)
+    length, sn, sp, columns, grid_rows = np.array(list(rows), dtype=float).reshape(-1, 5).T
+    mean, thin, thick = (sn + sp) / 2, np.minimum(sn, sp), np.maximum(sn, sp)
+    most = np.minimum(space.width / columns, space.depth / grid_rows)
+    widest = np.floor((most - mean) / step + 1e-6) * step
+    closest = np.ceil(np.maximum(limits.gap, thick - mean + limits.corner) / step - 1e-6) * step
+    fits = (limits.leg_side[0] - 1e-9 <= thin) & (thick <= limits.leg_side[1] + 1e-9)
+    fits &= (limits.leg_length[0] - 1e-9 <= length) & (length <= limits.leg_length[1] + 1e-9)
+    fits &= (length <= limits.slenderness * thin + 1e-9) & (widest >= closest - 1e-9)
+    smaller = fits & (mean + widest > 1.05 * (mean + closest))
+    kept = np.concatenate([np.flatnonzero(fits), np.flatnonzero(smaller)])
+    gap = np.concatenate([widest[fits], closest[smaller]])
+    length_, sn_, sp_, pitch = (_tidied(v) for v in (length[kept], sn[kept], sp[kept], mean[kept] + gap))
+    columns_, rows_ = columns[kept], grid_rows[kept]
+    edge, count = 2 * limits.edge_margin, kept.size
     candidates = Candidates(
         np.repeat(like.n, count), np.repeat(like.p, count), length_, sn_, sp_, pitch, columns_ * rows_ / 2,
         (columns_ * pitch + edge) * (rows_ * pitch + edge), np.repeat(like.series, count),
@@ -170,6 +166,6 @@ def _join(parts: list[Built]) -> Built:
     )
 
 
-def tidy(value: float) -> float:
-    """Remove the last-digit noise of adding steps, so that the file shows 1.4 mm."""
-    return float(f"{value:.9g}")
+def _tidied(values: Array) -> Array:
+    """Remove the last-digit noise of adding steps, so that the file shows 1.4 mm; to a tenth of a nanometre."""
+    return np.array([float(f"{v:.9g}") for v in np.unique(values)])[np.unique(values, return_inverse=True)[1]]
