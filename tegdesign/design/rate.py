@@ -249,13 +249,17 @@ def _ceiling(design: Design, modules: Modules, pair: tuple[Material, Material], 
             f"limit, {hot:.0f} K, and the sink, {cold:.0f} K"
         )
         return Ceiling(power, rated.power_W / power, words)
-    outside = [source.resistance + sink.resistance]
-    outside += [first.thermal_parts(side)[part] for side in ("hot", "cold") for part in ("interface", "substrate")]
-    external = float(np.sum(outside))
+    parts = {
+        side: law.resistance + sum(first.thermal_parts(side)[part] for part in ("interface", "substrate"))
+        for side, law in (("hot", source), ("cold", sink))
+    }
+    external = float((parts["hot"] + parts["cold"])[0])
     hot = design.source.reference_temperature
     if external == 0:
         return Ceiling(None, None, "surfaces are held at the legs, so nothing outside them limits the power")
-    mean = (hot + cold) / 2
+    # at the optimum the legs hold half of the difference; the rest falls outside, as the resistances go
+    lean = float((parts["cold"] - parts["hot"])[0]) / external
+    mean = (hot + cold) / 2 + lean * (hot - cold) / 4
     power = float(power_ceiling(_best_z(n, p, mean), hot - cold, mean, external)) * g.modules
     words = (
         f"films, interfaces and plates of {external:.4g} K/W per module and {hot - cold:.1f} K in all let ideal legs "

@@ -26,7 +26,7 @@ def read_text(path: str | os.PathLike[str]) -> str:
     except UnicodeDecodeError as error:
         raise InputError(f"{path}: is not a UTF-8 text file (byte {error.start})") from error
     except (OSError, RuntimeError) as error:
-        raise InputError(f"{str(path)[:200]}: cannot be read ({error})") from error
+        raise InputError(f"{str(path)[:200]}: cannot be read ({getattr(error, 'strerror', None) or error})") from error
     if "\0" in text:
         raise InputError(f"{path}: is not a text file (byte {text.index(chr(0))} is zero)")
     return text
@@ -76,7 +76,8 @@ def check_place(path: str | os.PathLike[str]) -> None:
         is_folder = Path(path).is_dir()
         Path(path).exists()
     except (OSError, RuntimeError) as error:  # a name too long, a link to itself, a folder that is gone
-        raise InputError(f"{str(path)[:200]}: cannot be written ({error})") from error
+        reason = getattr(error, "strerror", None) or error
+        raise InputError(f"{str(path)[:200]}: cannot be written ({reason})") from error
     if is_folder:
         raise InputError(f"{path}: is a folder, expected a file to write")
     if not folder.is_dir():

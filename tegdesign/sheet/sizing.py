@@ -25,7 +25,7 @@ def verdict(sizing: Sizing) -> str:
     if sizing.met:
         return f"BRIEF MET: {sizing.brief.title}"
     lines = [f"BRIEF NOT MET: {sizing.brief.title}", *(f"  {missed(c)}" for c in sizing.failed)]
-    return "\n".join([*lines, "  The design below is the best that the limits allow."])
+    return "\n".join([*lines, "  The design below is the best found within the limits."])
 
 
 def sizing_report(sizing: Sizing) -> str:

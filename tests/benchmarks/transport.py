@@ -10,11 +10,15 @@ written out in plain Python (no arrays, coefficients of the point worked out onc
 import argparse
 import os
 import platform
+import sys
 import time
 from math import exp, log1p, sqrt
+from pathlib import Path
 
 import numpy as np
 from scipy.integrate import quad
+
+sys.path.insert(0, str(Path(__file__).resolve().parents[2]))
 
 from tegdesign.material.transport.band import Band
 from tegdesign.material.transport.bands import Bands

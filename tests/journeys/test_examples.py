@@ -21,7 +21,7 @@ SIZED = {
     "burner-beacon": (0, "efficiency", {"service limit of the n leg (open circuit)"}),
     "flue-gas-plate": (0, "power_W", {"number of modules", "footprint"}),
     "kiln-exhaust": (0, "power_W", {"number of modules", "footprint"}),
-    "oven-wall": (0, "power_W", {"number of modules", "footprint"}),
+    "oven-wall": (0, "power_W", {"footprint"}),
 }
 COMPARED = {"pair-choice"}
 
@@ -83,7 +83,8 @@ def test_design_file_reproduces_every_number(name, sized):
 
 # Keys whose numbers have no unit, or have it beside them under "unit".
 BARE = {
-    "efficiency", "efficiency_deviation", "carnot_efficiency", "module_figure_of_merit", "fill_factor", "load_ratio",
+    "efficiency", "efficiency_of_given_heat",
+    "efficiency_deviation", "carnot_efficiency", "module_figure_of_merit", "fill_factor", "load_ratio",
     "power_deviation", "share_of_heat", "share_of_internal_resistance", "share_reached", "value", "limit", "margin",
     "aimed_efficiency", "aimed_before_rounding_efficiency", "area_ratio_n_to_p", "penalty_of_equal_areas",
     "compatibility_spread", "couples_per_module", "limits.slenderness", "outside_data_K",
