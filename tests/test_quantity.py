@@ -133,3 +133,32 @@ def test_schema_of_a_typed_field():
     assert properties["length"]["type"] == "string"
     assert "1 mm" in properties["length"]["description"]
     assert properties["share"]["type"] == "number"
+
+
+@pytest.mark.parametrize("prefix", ["", "n", "u", "m", "k", "M"])
+@pytest.mark.parametrize(
+    "target", ["m", "W", "V", "V/K", "W/m/K", "W/m^2/K", "ohm", "ohm*m", "A", "W/K", "m^2", "1/K", "S/m", "K", "kg/m^3"]
+)
+def test_units_read_without_the_library_agree_with_it(prefix, target):
+    import pint
+
+    from tegdesign.quantity import _direct, conversion
+
+    direct = _direct(prefix + target, target, True)
+    registry = pint.UnitRegistry()
+    try:
+        expected = registry.Quantity(1.0, prefix + target).to(target).magnitude
+    except pint.UndefinedUnitError:
+        assert direct is None  # a second prefix, as in mkg
+        return
+    assert_allclose(conversion(prefix + target, target, True)[0], expected, rtol=1e-14)
+    if direct is not None:
+        assert_allclose(direct[0], expected, rtol=1e-14)
+
+
+def test_degrees_celsius_need_no_library():
+    from tegdesign.quantity import _direct
+
+    assert _direct("degC", "K", False) == (1.0, 273.15)
+    assert _direct("degC", "K", True) == (1.0, 0.0)
+    assert _direct("cm2", "m^2", False) is None

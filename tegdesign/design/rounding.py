@@ -14,8 +14,8 @@ from tegdesign.design.search import Space, score
 from tegdesign.errors import InputError
 from tegdesign.material.curve import Array
 
-_GRIDS = 30  # grids tried for each free answer
-_FINALISTS = 8  # of them that are improved step by step
+_GRIDS = 20  # grids tried for each free answer
+_FINALISTS = 5  # of them that are improved step by step
 _SHARES = (1.0, 0.8)  # of the widest legs that the pitch leaves room for
 _LENGTHS = (0.75, 1.0, 1.3)  # times the length that keeps the thermal resistance of the legs
 

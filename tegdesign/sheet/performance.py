@@ -104,6 +104,18 @@ def _electrical(rating: Rating, s: State) -> list[tuple[str, str]]:
         ("heat drawn", amount(s.heat_in_W, "W")),
         ("heat rejected", amount(s.heat_out_W, "W")),
         ("heat flux, hot face", f"{number(s.heat_flux_hot_W_per_m2 / 1e4)} W/cm2"),
+        *_of_given_heat(rating, s),
+    ]
+
+
+def _of_given_heat(rating: Rating, s: State) -> list[tuple[str, str]]:
+    """Say what a source of given heat loses by its leak, and the efficiency on all of its heat."""
+    given = rating.design.source.given_heat
+    if given is None or s.efficiency_of_given_heat is None:
+        return []
+    return [
+        ("leak of the source", amount(given - s.heat_in_W, "W")),
+        ("efficiency, leak included", percent(max(s.efficiency_of_given_heat, 0.0), 2)),
     ]
 
 

@@ -32,9 +32,11 @@ def sizing_report(sizing: Sizing) -> str:
     """Return the report that ``tegdesign size`` prints."""
     unit = AIM_UNIT[sizing.brief.aim]
     factor = 100.0 if unit == "%" else 1.0
+    of_all = sizing.brief.aim == "efficiency" and sizing.brief.source.given_heat is not None
+    basis = " on all the heat given" if of_all else ""
     cost = 1 - sizing.objective / sizing.objective_before_rounding
     aim = (
-        f"Aim: {sizing.brief.aim}, {sizing.objective * factor:.5g} {unit}; "
+        f"Aim: {sizing.brief.aim}{basis}, {sizing.objective * factor:.5g} {unit}; "
         f"{sizing.objective_before_rounding * factor:.5g} {unit} before rounding to workshop steps "
         f"({-100 * cost:+.2f} %)"
     )

@@ -31,6 +31,11 @@ class FixedHeat(Boundary):
         """Temperature of the ambient [K]."""
         return self.ambient_temperature
 
+    def words(self) -> str:
+        """Return the source in words; the ambient always stands in it."""
+        given = self.model_dump(exclude={"kind"})
+        return ", ".join(f"{name.replace('_', ' ')} {value}" for name, value in given.items())
+
     @property
     def given_heat(self) -> float:
         """The heat of the source [W]."""
@@ -45,4 +50,4 @@ class FixedHeat(Boundary):
 
     def stations(self, face: Array, heat: Array) -> list[tuple[str, Array]]:
         """Return the ambient that the leak goes to."""
-        return [("ambient of the source", spread(self.ambient_temperature, face))]
+        return [("ambient that the leak goes to, beside the source", spread(self.ambient_temperature, face))]
