@@ -79,7 +79,7 @@ def _direct(unit: str, target: str, difference: bool) -> tuple[float, float] | N
     prefix = asked.removesuffix(wanted)
     if prefix + wanted != asked or prefix not in _PREFIXES:
         return None
-    if prefix and not re.match(r"[A-Za-z]+(/|$)", target):  # the prefix of cm^2 is squared
+    if prefix and (target.startswith("kg") or not re.match(r"[A-Za-z]+(/|$)", target)):  # not mkg, and cm^2 is squared
         return None
     return _PREFIXES[prefix], 0.0
 
