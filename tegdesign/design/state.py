@@ -134,7 +134,7 @@ def _ladder(ask: Ask, m: Modules, point: OperatingPoint, k: int, count: int) -> 
     heat_in, heat_out = float(point.heat_in[k]), float(point.heat_out[k])
     face = np.array([point.hot_face[k]])
     for place, value in ask.source.stations(face, np.array([heat_in * count])):
-        places.append((place if place.endswith("source") else f"source {place}", float(value[0])))
+        places.append((f"source {place}", float(value[0])))
     t = float(point.hot_face[k])
     places.append(("hot face", t))
     parts = m.thermal_parts("hot")

@@ -111,7 +111,7 @@ def test_shares_of_the_ladder_add_up_to_all(ratings):
 def test_fixed_heat_counts_no_fall_from_its_ambient(ratings):
     lines = rating_report(ratings["tiny"]).split("SINK, RATED\n")[1].splitlines()
     ambient, face = lines[2], lines[3]
-    assert "ambient beside the source" in ambient
+    assert "source ambient" in ambient
     assert "hot face" in face
     assert ambient.split()[-1] == face.split()[-1] == "K"  # no drop and no share behind the temperature
 

@@ -50,4 +50,4 @@ class FixedHeat(Boundary):
 
     def stations(self, face: Array, heat: Array) -> list[tuple[str, Array]]:
         """Return the ambient that the leak goes to."""
-        return [("ambient beside the source", spread(self.ambient_temperature, face))]
+        return [("ambient", spread(self.ambient_temperature, face))]
