@@ -22,6 +22,7 @@ if TYPE_CHECKING:
     from tegdesign.design.size import size
     from tegdesign.errors import ConvergenceError, DataRangeError, InputError, TegdesignError
     from tegdesign.material.library import find as find_material
+    from tegdesign.material.library import materials
     from tegdesign.material.library import names as material_names
     from tegdesign.sheet import write_sheet
 
@@ -39,6 +40,7 @@ _HOMES = {
     "curve": "design.scan:curve",
     "find_material": "material.library:find",
     "map_over": "design.scan:map_over",
+    "materials": "material.library:materials",
     "material_names": "material.library:names",
     "operating_table": "design.scan:operating_table",
     "rate": "design.rate:rate",
@@ -60,6 +62,7 @@ __all__ = [
     "find_material",
     "map_over",
     "material_names",
+    "materials",
     "operating_table",
     "rate",
     "read_brief",
@@ -71,10 +74,12 @@ __all__ = [
 
 def __getattr__(name: str) -> Any:
     """Import a name of ``__all__`` when it is first asked for."""
-    if name not in _HOMES:
-        raise AttributeError(f"module 'tegdesign' has no attribute '{name}'")
     from importlib import import_module
 
+    if name == "sheet":  # the room itself is the twin of the command: it can be called
+        return import_module("tegdesign.sheet")
+    if name not in _HOMES:
+        raise AttributeError(f"module 'tegdesign' has no attribute '{name}'")
     module, attribute = _HOMES[name].split(":")
     value = globals()[name] = getattr(import_module(f"tegdesign.{module}"), attribute)
     return value

@@ -33,10 +33,19 @@ TWINS = {
     "rate": "rate",
     "compare": "compare",
     "sheet": "write_sheet",
-    "materials": "find_material",
+    "materials": "materials",
 }
 
 
 def test_every_command_has_a_twin():
     for command in COMMANDS:
         assert TWINS[command] in tegdesign.__all__
+
+
+def test_twins_of_sheet_and_materials(tmp_path):
+    frame = tegdesign.materials("n").to_frame()
+    assert {"lead-telluride-n", "skutterudite-n"} <= set(frame.index)
+    assert set(frame["polarity"]) == {"n"}
+    assert len(tegdesign.materials()) == 30
+    with pytest.raises(tegdesign.InputError, match=r"\.pdf or \.md"):
+        tegdesign.sheet("design.toml", tmp_path / "sheet.doc")

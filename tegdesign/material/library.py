@@ -7,9 +7,15 @@ from collections.abc import Iterable
 from dataclasses import replace
 from functools import lru_cache
 from pathlib import Path
+from typing import TYPE_CHECKING
+
+import numpy as np
 
 from tegdesign.errors import InputError, closest
-from tegdesign.material.material import Material
+from tegdesign.material.material import Material, Polarity
+
+if TYPE_CHECKING:
+    import pandas as pd
 
 VARIABLE = "TEGDESIGN_MATERIALS"
 Folder = str | os.PathLike[str]
@@ -68,6 +74,38 @@ def _catalogue(folders: Iterable[Folder]) -> dict[str, list[Path]]:
 def names(folders: Iterable[Folder] = ()) -> list[str]:
     """Return the names of all materials that ``find`` knows, sorted."""
     return sorted(_catalogue(folders))
+
+
+class Materials(tuple[Material, ...]):
+    """Materials in the order of their names."""
+
+    __slots__ = ()
+
+    def to_frame(self) -> pd.DataFrame:
+        """Return one row a material: polarity, composition, range and service limit [K], best zT, hazards."""
+        import pandas as pd
+
+        rows = []
+        for m in self:
+            first, last = m.range
+            best = float(np.max(m.figure_of_merit(np.linspace(first, last, 201))))
+            rows.append((m.name, m.polarity, m.composition, first, last, m.service_limit.value, best, m.hazard_tags))
+        columns = ["name", "polarity", "composition", "T_first_K", "T_last_K", "service_limit_K", "best_zT"]
+        columns.append("hazard_tags")
+        return pd.DataFrame(rows, columns=columns).set_index("name")
+
+
+def materials(polarity: Polarity | None = None, folders: Iterable[Folder] = ()) -> Materials:
+    """Return all materials that ``find`` knows, of one polarity where asked.
+
+    Raises
+    ------
+    InputError
+        A file of the folders cannot be used.
+    """
+    folders = tuple(folders)
+    every = (find(name, folders) for name in names(folders))
+    return Materials(m for m in every if polarity in (None, m.polarity))
 
 
 def find(name: str | os.PathLike[str], folders: Iterable[Folder] = ()) -> Material:

@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import os
+import sys
 from pathlib import Path
+from types import ModuleType
 from typing import TYPE_CHECKING
 
 from tegdesign.errors import InputError
@@ -52,3 +54,14 @@ def write_sheet(rating: Rating | Design | str | os.PathLike[str], path: str | os
         from tegdesign.sheet.markdown import sheet_markdown
 
         write_whole(path, sheet_markdown(rating))
+
+
+class _Room(ModuleType):
+    """This room as the twin of ``tegdesign sheet``: ``tegdesign.sheet(rating, "sheet.pdf")``."""
+
+    def __call__(self, rating: Rating | Design | str | os.PathLike[str], path: str | os.PathLike[str]) -> None:
+        """Do what ``write_sheet`` does."""
+        write_sheet(rating, path)
+
+
+sys.modules[__name__].__class__ = _Room
