@@ -20,8 +20,7 @@ from tegdesign.design.parts import (
     Stack,
     Thickness,
 )
-from tegdesign.document import load
-from tegdesign.errors import InputError
+from tegdesign.document import given, load
 from tegdesign.quantity import write
 from tegdesign.system.boundary import AnyBoundary, FixedHeat
 from tegdesign.system.load import AnyLoad, Matched
@@ -140,8 +139,4 @@ def read_brief(path: str | os.PathLike[str]) -> Brief:
 
 def as_brief(brief: Brief | str | os.PathLike[str]) -> Brief:
     """Return a brief given as one or as a path."""
-    if isinstance(brief, Brief):
-        return brief
-    if not isinstance(brief, (str, os.PathLike)):
-        raise InputError(f"expected a Brief or the path of one, got {type(brief).__name__}")
-    return read_brief(brief)
+    return given(brief, Brief, read_brief)

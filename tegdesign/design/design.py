@@ -10,8 +10,7 @@ from pydantic import BaseModel, model_validator
 
 from tegdesign.design.brief import MATERIAL_FILE, check_direction
 from tegdesign.design.parts import Aim, Count, Length, Losses, MaterialUse, Require, Stack, Thickness
-from tegdesign.document import load, to_toml, write_whole
-from tegdesign.errors import InputError
+from tegdesign.document import given, load, to_toml, write_whole
 from tegdesign.quantity import write
 from tegdesign.system.boundary import AnyBoundary
 from tegdesign.system.load import AnyLoad, Matched
@@ -154,8 +153,4 @@ def read_design(path: str | os.PathLike[str]) -> Design:
 
 def as_design(design: Design | str | os.PathLike[str]) -> Design:
     """Return a design given as one or as a path."""
-    if isinstance(design, Design):
-        return design
-    if not isinstance(design, (str, os.PathLike)):
-        raise InputError(f"expected a Design or the path of one, got {type(design).__name__}")
-    return read_design(design)
+    return given(design, Design, read_design)

@@ -2,13 +2,14 @@
 
 from tegdesign.document.disk import check_place, read_text, write_whole
 from tegdesign.document.toml import Path_, first_line, line_numbers, parse_toml, to_toml
-from tegdesign.document.typed import Finding, load, message, validate
+from tegdesign.document.typed import Finding, given, load, message, validate
 
 __all__ = [
     "Finding",
     "Path_",
     "check_place",
     "first_line",
+    "given",
     "line_numbers",
     "load",
     "message",

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Iterator, Mapping
+from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any, Literal, TypeVar
 
@@ -46,6 +46,23 @@ def validate(data: Mapping[str, Any], text: str, model: type[Model]) -> tuple[Mo
         return model.model_validate(data), []
     except ValidationError as error:
         return None, sorted(_findings(error, data, text, model), key=lambda finding: finding.line)
+
+
+def given(
+    value: Model | str | os.PathLike[str], model: type[Model], read: Callable[[str | os.PathLike[str]], Model]
+) -> Model:
+    """Return a typed model given as one, or as the path of its file.
+
+    Raises
+    ------
+    InputError
+        It is neither, or the file cannot be used.
+    """
+    if isinstance(value, model):
+        return value
+    if not isinstance(value, (str, os.PathLike)):
+        raise InputError(f"expected a {model.__name__} or the path of one, got {type(value).__name__}")
+    return read(value)
 
 
 def load(

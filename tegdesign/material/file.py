@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+from abc import abstractmethod
 from collections.abc import Mapping
 from importlib import import_module
 from pathlib import Path
@@ -81,9 +82,9 @@ class MaterialFile(Strict):
     source: Source = Source()
     uncertainty: Uncertainty = Uncertainty()
 
+    @abstractmethod
     def curves(self) -> tuple[Curve, Curve, Curve]:
         """Return Seebeck coefficient [V/K], resistivity [ohm m] and thermal conductivity [W/m/K]."""
-        raise NotImplementedError
 
     def point_lines(self) -> Mapping[str, list[int]]:
         """Return the lines of each property's points, from the first line of ``points``; {} when computed."""
