@@ -100,8 +100,11 @@ def _findings(
     error: ValidationError, data: Mapping[str, Any], text: str, model: type[BaseModel]
 ) -> Iterator[Finding]:
     lines = line_numbers(text)
-    for problem in error.errors(include_url=False):
+    problems = error.errors(include_url=False)
+    for problem in problems:
         full: Path_ = tuple(problem["loc"])
+        if problem["type"] == "too_short" and any(p["loc"][: len(full)] == full != p["loc"] for p in problems):
+            continue  # only because the items themselves are wrong
         location = _written(full, data)
         line = next((lines[location[:k]] for k in range(len(location), 0, -1) if location[:k] in lines), 1)
         context = problem.get("ctx", {})
@@ -121,8 +124,8 @@ def _written(location: Path_, data: Any) -> Path_:
     """Return a location without the kinds that the typed model puts between the keys of the file."""
     kept: list[str | int] = []
     parts = list(location)
-    while parts:
-        if isinstance(data, Mapping) and parts[0] == data.get("kind"):
+    while parts and not isinstance(data, (str, int, float)):  # a bare value has nothing inside
+        if kept and isinstance(data, Mapping) and parts[0] == data.get("kind"):
             parts.pop(0)
         if parts:
             kept.append(parts[0])
@@ -177,8 +180,8 @@ def _models(model: type[BaseModel], path: Path_) -> list[type[BaseModel]]:
     while queue:
         part = queue.pop(0)
         if isinstance(part, type) and issubclass(part, BaseModel):
-            rest, kind = names[1:], part.model_fields.get("kind")
-            if not rest or kind is None or kind.default == rest[0]:
+            rest, kind = names[1:], _kind(part)
+            if not rest or kind is None or kind == rest[0]:
                 found += _models(part, tuple(rest[1:] if rest and kind is not None else rest))
         queue.extend(get_args(part))
     return found
@@ -191,7 +194,15 @@ def _keys(model: type[BaseModel], path: Path_) -> list[str]:
 
 def _kinds(model: type[BaseModel], path: Path_) -> str:
     """Return the kinds that a table may be of."""
-    return ", ".join(repr(found.model_fields["kind"].default) for found in _models(model, path))
+    return ", ".join(repr(_kind(found)) for found in _models(model, path))
+
+
+def _kind(model: type[BaseModel]) -> str | None:
+    """Return the word that tells a model from others of a union, None if it needs none."""
+    from typing import get_args
+
+    field = model.model_fields.get("kind")
+    return None if field is None else next(iter(get_args(field.annotation)), None)
 
 
 def _unit(model: type[BaseModel], path: Path_) -> str:

@@ -7,8 +7,8 @@ from typing import NamedTuple
 
 import numpy as np
 
-from tegdesign.leg.panels import KAPPA, RHO, SEEBECK, THOMSON, Panels, gauss_rule, horner
-from tegdesign.material.curve import Array
+from tegdesign.leg.panels import Panels, gauss_rule
+from tegdesign.material.curve import Array, horner
 
 _PIECES, _RATIO = 8, 4.0  # ``own_nodes``: pieces towards the hot end, each that many times smaller than the last
 
@@ -76,15 +76,15 @@ def shared_nodes(panels: Panels, lower: Array, upper: Array) -> Nodes:
     left -= cut
     s = x[:, None, None] * width
     s += left
-    c = panels.pick(panel)
-    kappa = horner(c[KAPPA], s)
+    c, rows = panels.pick(panel), panels.rows
+    kappa = horner(c[rows.kappa], s)
     kappa *= width
-    product = horner(c[RHO], s)
+    product = horner(c[rows.rho], s)
     product *= kappa
     kappa *= weight[:, None, None]
-    pieces = kappa, product, horner(c[THOMSON], s)
+    pieces = kappa, product, horner(c[rows.thomson], s)
     left[1] += width[1]  # now the ends themselves
-    ends = [horner(c[rows], left) for rows in (SEEBECK, THOMSON, RHO, KAPPA)]
+    ends = [horner(c[own], left) for own in (rows.seebeck, rows.thomson, rows.rho, rows.kappa)]
     cold, hot = End(lower, *(e[0] for e in ends)), End(upper, *(e[1] for e in ends))
     arrays = np.empty((3, nodes, size))
     for array, piece in zip(arrays, pieces, strict=True):
@@ -119,19 +119,19 @@ def own_nodes(panels: Panels, lower: Array, upper: Array) -> Nodes:
     keep = np.append((width[:-1] > 0).any(axis=1), True)  # the last even for equal ends, found unsolvable later
     start, width = cuts[:-1][keep], width[keep]
     panel = np.clip(edges.searchsorted(start + width / 2, side="right") - 1, 0, edges.size - 2)
-    c = panels.pick(panel)[:, :, None]
+    c, rows = panels.pick(panel)[:, :, None], panels.rows
     left = start - edges[panel]
     s = left[:, None] + x[:, None] * width[:, None]
-    kappa = horner(c[KAPPA], s) * width[:, None]
+    kappa = horner(c[rows.kappa], s) * width[:, None]
     flat = (-1, lower.size)
     cold, hot = (
-        End(t, *(horner(c[rows, k, 0], at) for rows in (SEEBECK, THOMSON, RHO, KAPPA)))
+        End(t, *(horner(c[own, k, 0], at) for own in (rows.seebeck, rows.thomson, rows.rho, rows.kappa)))
         for t, k, at in ((lower, 0, left[0]), (upper, -1, left[-1] + width[-1]))
     )
     return Nodes(
         (kappa * weight[:, None]).reshape(flat),
-        (horner(c[RHO], s) * kappa).reshape(flat),
-        horner(c[THOMSON], s).reshape(flat),
+        (horner(c[rows.rho], s) * kappa).reshape(flat),
+        horner(c[rows.thomson], s).reshape(flat),
         integration(m, start.shape[0]),
         cold,
         hot,

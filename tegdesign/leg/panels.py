@@ -7,12 +7,14 @@ them is worked out once; only the two end pieces of a leg, where its own tempera
 from __future__ import annotations
 
 from dataclasses import dataclass
-from functools import lru_cache
+from functools import cached_property, lru_cache
+from itertools import pairwise
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
 
-from tegdesign.material.curve import Array, Curve
+from tegdesign.material.curve import Array, Curve, horner
 from tegdesign.material.material import Material
 
 # Panels with the end values held reach from here up to this far above the last point, so that an iteration may
@@ -31,14 +33,13 @@ def gauss_rule(points: int) -> tuple[Array, Array, Array]:
     return x, w, to_node
 
 
-def horner(coefficients: Array, s: Array) -> Array:
-    """Return the polynomial of coefficients (powers, ...), lowest first, at s; shapes (...) broadcast."""
-    out: Array = s * coefficients[-1]
-    for c in coefficients[-2:0:-1]:
-        out += c
-        out *= s
-    out += coefficients[0]
-    return out
+class Rows(NamedTuple):
+    """Which rows of the coefficients of ``Panels`` belong to which property."""
+
+    thomson: slice
+    rho: slice
+    kappa: slice
+    seebeck: slice
 
 
 @dataclass(frozen=True, eq=False)
@@ -49,9 +50,10 @@ class Panels:
     ----------
     edges : ndarray (K+1,)
         Table temperatures [K] with a held panel below and above.
-    coefficients : ndarray (17, K)
-        Polynomials in T less the left edge, lowest power first: rows 0 to 4 the Thomson integral
-        (integral of S dT) - S T [V], then four each of rho, kappa and S.
+    coefficients : ndarray (4 d + 5, K)
+        Polynomials in T less the left edge, lowest power first: first d + 2 rows of the Thomson integral
+        (integral of S dT) - S T [V], then d + 1 each of rho, kappa and S; ``rows`` tells which. Cubics of a table
+        have d = 3.
     conductivity, product, thomson : ndarray (K, m)
         At the nodes: kappa times width and Gauss weight, rho kappa times width, the Thomson integral.
     """
@@ -64,11 +66,15 @@ class Panels:
     thomson: Array
 
     def pick(self, panel: NDArray[np.intp]) -> Array:
-        """Return the coefficients (17, ...) of panels (...)."""
+        """Return the coefficients (4 d + 5, ...) of panels (...)."""
         return self.coefficients.take(panel, axis=1, mode="clip")  # the quickest of the modes
 
-
-THOMSON, RHO, KAPPA, SEEBECK = slice(0, 5), slice(5, 9), slice(9, 13), slice(13, 17)  # rows of the coefficients
+    @cached_property
+    def rows(self) -> Rows:
+        """Rows of the coefficients of each property."""
+        d = (len(self.coefficients) - 5) // 4
+        cuts = np.cumsum([0, d + 2, d + 1, d + 1, d + 1]).tolist()
+        return Rows(*(slice(first, last) for first, last in pairwise(cuts)))
 
 
 def prepare(material: Material, points: int = 4, subdivide: int = 1) -> Panels:
@@ -99,12 +105,12 @@ def _prepare(curves: tuple[Curve, Curve, Curve], points: int, subdivide: int) ->
     table = np.append(np.repeat(table[:-1], parts) + within * step, table[-1])
     edges = np.concatenate([[min(_LOWEST, table[0] / 2)], table, [table[-1] + _BEYOND]])
     left, width = edges[:-1], np.diff(edges)
-    seebeck, rho, kappa = (_on_panels(c, edges) for c in curves)
-    a0, a1, a2, a3 = seebeck
-    none = np.zeros_like(left)
-    integral = np.stack([none, a0, a1 / 2, a2 / 3, a3 / 4])
-    product = np.stack([a0 * left, a1 * left + a0, a2 * left + a1, a3 * left + a2, a3])  # S T
-    thomson = integral - product
+    degree = max(len(c.coefficients) for c in curves) - 1
+    seebeck, rho, kappa = (_on_panels(c, edges, degree) for c in curves)
+    none = np.zeros((1, left.size))
+    integral = np.concatenate([none, seebeck / np.arange(1.0, degree + 2)[:, None]])
+    thomson = integral - np.concatenate([seebeck * left, none])  # less S T, T = left + s
+    thomson[1:] -= seebeck
     thomson[0, 1:] += np.cumsum(horner(integral, width))[:-1]
     x, weight, _ = gauss_rule(points)
     s = x[:, None] * width
@@ -119,14 +125,18 @@ def _prepare(curves: tuple[Curve, Curve, Curve], points: int, subdivide: int) ->
     )
 
 
-def _on_panels(curve: Curve, edges: Array) -> Array:
-    """Return the cubics of a curve shifted to the left edge of each panel; constant where it is held."""
+def _on_panels(curve: Curve, edges: Array, degree: int) -> Array:
+    """Return the polynomials of a curve shifted to the left edge of each panel; constant where it is held."""
     left, middle = edges[:-1], (edges[:-1] + edges[1:]) / 2
     first, last = curve.range
     k = np.clip(np.searchsorted(curve.temperature, middle, side="right") - 1, 0, curve.temperature.size - 2)
-    a, b, c, e = curve.coefficients[:, k]
     s = left - curve.temperature[k]
-    cubic = np.stack([a + s * (b + s * (c + s * e)), b + s * (2 * c + s * 3 * e), c + 3 * s * e, e])
-    held = np.zeros_like(cubic)
+    shifted = np.zeros((degree + 1, left.size))
+    own = len(curve.coefficients)
+    shifted[:own] = curve.coefficients[:, k]
+    for done in range(own - 1):  # repeated synthetic division
+        for power in range(own - 2, done - 1, -1):
+            shifted[power] += s * shifted[power + 1]
+    held = np.zeros_like(shifted)
     held[0] = np.where(middle < first, curve.value[0], curve.value[-1])
-    return np.where((middle < first) | (middle > last), held, cubic)
+    return np.where((middle < first) | (middle > last), held, shifted)

@@ -15,6 +15,7 @@ from tegdesign.document import Finding
 from tegdesign.errors import InputError
 from tegdesign.material import file
 from tegdesign.material.curve import Array, Curve
+from tegdesign.material.lorenz import lorenz_rule
 from tegdesign.material.material import Material
 
 HIGHEST_FIGURE_OF_MERIT = 3.0
@@ -52,15 +53,6 @@ def check(path: str | os.PathLike[str]) -> list[Finding]:
         *_about_physics(material, places),
     ]
     return sorted(found, key=lambda finding: finding.line)
-
-
-def lorenz_number(seebeck_coefficient: Array) -> Array:
-    """Return L = (1.5 + exp(-|S| / 116 uV/K)) 1e-8 W ohm/K^2 of a Seebeck coefficient [V/K].
-
-    Within 5 % for one parabolic band with acoustic scattering, within 20 % for PbSe, PbS, PbTe and SiGe:
-    Kim et al. 2015, APL Mater. 3, 041506, doi 10.1063/1.4908244.
-    """
-    return np.asarray((1.5 + np.exp(-np.abs(seebeck_coefficient) / 116e-6)) * 1e-8)
 
 
 def _warning(line: int, what: str, value: str = "", limit: str = "", mend: str = "") -> Finding:
@@ -164,7 +156,7 @@ def _about_physics(material: Material, places: dict[str, list[int]]) -> Iterator
     kappa = material.thermal_conductivity
     for k in np.flatnonzero((kappa.temperature >= first) & (kappa.temperature <= last)):
         t = kappa.temperature[k]
-        electronic = float(lorenz_number(s(t)) * t / material.resistivity(t))
+        electronic = float(lorenz_rule(s(t)) * t / material.resistivity(t))
         line = _line(places, "thermal_conductivity", int(k))
         if kappa.value[k] < electronic:
             yield _warning(

@@ -1,4 +1,4 @@
-"""A measured property against temperature: monotone piecewise cubic, its integral, and its ends held."""
+"""A property against temperature: polynomials between its points, their integral, and the ends held."""
 
 from __future__ import annotations
 
@@ -46,9 +46,19 @@ def _end_slope(h0: float, h1: float, s0: float, s1: float) -> float:
     return float(slope)
 
 
+def horner(coefficients: Array, s: Array) -> Array:
+    """Return the polynomial of coefficients (powers, ...), lowest first, at s; shapes (...) broadcast."""
+    out: Array = s * coefficients[-1]
+    for c in coefficients[-2:0:-1]:
+        out += c
+        out *= s
+    out += coefficients[0]
+    return out
+
+
 @dataclass(frozen=True, eq=False)
 class Curve:
-    """One property at measured temperatures, cubic between them without overshoot, ends held outside.
+    """One property between temperatures, ends held outside: a cubic without overshoot, or polynomials as given.
 
     Parameters
     ----------
@@ -56,10 +66,14 @@ class Curve:
         Strictly increasing temperatures [K], K >= 2.
     value : ndarray, shape (K,)
         Property in its SI unit.
+    pieces : ndarray, shape (d+1, K-1), optional
+        Power-series coefficients of each interval, lowest power first, from its left end, where the property is
+        computed rather than measured; degree d >= 1.
     """
 
     temperature: Array
     value: Array
+    pieces: Array | None = None
 
     def __post_init__(self) -> None:
         """Refuse lists that are not a function of temperature."""
@@ -84,7 +98,9 @@ class Curve:
 
     @cached_property
     def coefficients(self) -> Array:
-        """Power-series coefficients of each interval, shape (4, K-1), lowest power first, from its left."""
+        """Power-series coefficients of each interval, shape (d+1, K-1), lowest power first, from its left."""
+        if self.pieces is not None:
+            return self.pieces
         t, y = self.temperature, self.value
         d = monotone_slopes(t, y)
         h, secant = np.diff(t), np.diff(y) / np.diff(t)
@@ -93,11 +109,13 @@ class Curve:
         return np.stack([y[:-1], d[:-1], c, e])
 
     @cached_property
-    def _integral_at_points(self) -> Array:
-        h = np.diff(self.temperature)
-        a, b, c, e = self.coefficients
-        steps = h * (a + h * (b / 2 + h * (c / 3 + h * e / 4)))
-        return np.concatenate([[0.0], np.cumsum(steps)])
+    def _antiderivative(self) -> Array:
+        """Coefficients of the integral from the first temperature, lowest power first, shape (d+2, K-1)."""
+        c = self.coefficients
+        powers = np.arange(1.0, len(c) + 1)[:, None]
+        grown = np.concatenate([np.zeros((1, c.shape[1])), c / powers])
+        grown[0, 1:] = np.cumsum(horner(grown, np.diff(self.temperature)))[:-1]
+        return grown
 
     def _locate(self, temperature: ArrayLike) -> tuple[Array, NDArray[np.intp], Array]:
         t = np.asarray(temperature, dtype=float)
@@ -108,14 +126,12 @@ class Curve:
     def __call__(self, temperature: ArrayLike) -> Array:
         """Return the property at a temperature [K] of any shape; outside the range the end value is held."""
         _, k, s = self._locate(temperature)
-        a, b, c, e = self.coefficients[:, k]
-        return np.asarray(a + s * (b + s * (c + s * e)))
+        return np.asarray(horner(self.coefficients[:, k], s))
 
     def integral(self, temperature: ArrayLike) -> Array:
         """Return the exact integral from the first temperature to ``temperature`` [unit * K], ends held."""
         t, k, s = self._locate(temperature)
-        a, b, c, e = self.coefficients[:, k]
-        inside = self._integral_at_points[k] + s * (a + s * (b / 2 + s * (c / 3 + s * e / 4)))
+        inside = horner(self._antiderivative[:, k], s)
         below = np.minimum(t - self.temperature[0], 0.0) * self.value[0]
         above = np.maximum(t - self.temperature[-1], 0.0) * self.value[-1]
         return np.asarray(inside + below + above)

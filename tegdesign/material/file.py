@@ -7,9 +7,9 @@ from abc import abstractmethod
 from collections.abc import Mapping
 from importlib import import_module
 from pathlib import Path
-from typing import Annotated, Any
+from typing import Annotated, Any, Union
 
-from pydantic import BaseModel, ConfigDict, Field
+from pydantic import BaseModel, ConfigDict, Field, TypeAdapter
 
 from tegdesign import document
 from tegdesign.document import Finding
@@ -19,7 +19,7 @@ from tegdesign.material.material import Material, Polarity, Stated
 from tegdesign.quantity import Measure
 
 # One line a kind: word in the file -> where its model is. A new kind is a new file and a line here.
-KINDS = {"table": "tegdesign.material.table:TableFile"}
+KINDS = {"table": "tegdesign.material.table:TableFile", "bands": "tegdesign.material.bands.file:BandsFile"}
 
 Temperature = Annotated[float, Measure("K"), Field(gt=0, le=3500)]
 Share = Annotated[float, Field(gt=0, lt=1)]
@@ -176,6 +176,6 @@ def read(path: str | os.PathLike[str]) -> MaterialFile:
 
 def schema() -> dict[str, Any]:
     """Return the JSON Schema of material files, for editors."""
-    models = [model_of({"kind": kind}) for kind in KINDS]
-    found = [model.model_json_schema() for model in models]
-    return found[0] if len(found) == 1 else {"oneOf": found}
+    models = tuple(model_of({"kind": kind}) for kind in KINDS)
+    every: Any = Annotated[Union[models], Field(discriminator="kind")]  # noqa: UP007
+    return TypeAdapter(every).json_schema()

@@ -10,6 +10,7 @@ from numpy.typing import ArrayLike
 
 from tegdesign.errors import DataRangeError
 from tegdesign.material.curve import Array, Curve
+from tegdesign.material.lorenz import lorenz_rule
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -140,6 +141,21 @@ class Material:
         return np.asarray(
             self.seebeck_coefficient(t) ** 2 * t / (self.resistivity(t) * self.thermal_conductivity(t))
         )
+
+    def electronic_thermal_conductivity(self, temperature: ArrayLike) -> Array:
+        """Return the part of the carriers in kappa [W/m/K] at a temperature [K], by ``lorenz_rule``."""
+        t = np.asarray(temperature, dtype=float)
+        return np.asarray(lorenz_rule(self.seebeck_coefficient(t)) * t / self.resistivity(t))
+
+    def lattice_thermal_conductivity(self, temperature: ArrayLike) -> Array:
+        """Return kappa less the part of the carriers [W/m/K] at a temperature [K]."""
+        t = np.asarray(temperature, dtype=float)
+        return np.asarray(self.thermal_conductivity(t) - self.electronic_thermal_conductivity(t))
+
+    @property
+    def electronic_basis(self) -> str:
+        """Where the electronic part comes from."""
+        return "estimated by the Lorenz number of Kim et al. 2015, doi 10.1063/1.4908244; bipolar part in the rest"
 
     def compatibility_factor(self, temperature: ArrayLike) -> Array:
         """Return s = (sqrt(1 + zT) - 1) / (S T) [1/V].

@@ -250,4 +250,4 @@ def test_check_of_files_that_are_no_text_goes_on_with_the_others(tmp_path, chang
 def test_schema():
     done = materials("schema")
     assert done.exit_code == 0
-    assert json.loads(done.stdout)["properties"]["kind"]["const"] == "table"
+    assert set(json.loads(done.stdout)["discriminator"]["mapping"]) == {"table", "bands"}

@@ -10,9 +10,9 @@ from tegdesign.material.transport.band import Band
 from tegdesign.material.transport.bands import Bands
 from tegdesign.material.transport.conductance import ConductanceFunction
 from tegdesign.material.transport.constants import BOLTZMANN, CHARGE, SEEBECK_UNIT
+from tegdesign.material.lorenz import lorenz_rule
 from tegdesign.material.transport.derived import (
     level_from_seebeck,
-    lorenz_rule,
     quality_factor,
     single_band,
     weighted_mobility,

@@ -118,12 +118,3 @@ def quality_factor(weighted_mobility: ArrayLike, temperature: ArrayLike, lattice
     above_zero(lattice_conductivity, "lattice_conductivity [W/m/K]")
     coefficient = transport_coefficient(weighted_mobility, temperature)
     return np.asarray(SEEBECK_UNIT**2 * coefficient * np.asarray(temperature, dtype=float) / lattice_conductivity)
-
-
-def lorenz_rule(seebeck: ArrayLike) -> Array:
-    """Return the Lorenz number [W ohm/K^2] from the Seebeck coefficient [V/K] by a published rule of thumb.
-
-    L = (1.5 + exp(-|S| / 116 uV/K)) 1e-8, within 5 % for one acoustic band, 20 % for PbTe-like and SiGe. Kim
-    et al. 2015, APL Mater. 3, 041506, doi 10.1063/1.4908244.
-    """
-    return np.asarray((1.5 + np.exp(-np.abs(np.asarray(seebeck, dtype=float)) / 116e-6)) * 1e-8)
