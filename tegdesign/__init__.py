@@ -14,10 +14,12 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
+    from tegdesign.design.array import array
     from tegdesign.design.brief import Brief, read_brief
     from tegdesign.design.compare import compare
     from tegdesign.design.design import Design, read_design
     from tegdesign.design.rate import rate
+    from tegdesign.design.rows import rows
     from tegdesign.design.scan import curve, map_over, operating_table
     from tegdesign.design.size import size
     from tegdesign.errors import ConvergenceError, DataRangeError, InputError, TegdesignError
@@ -36,6 +38,7 @@ _HOMES = {
     "Design": "design.design:Design",
     "InputError": "errors:InputError",
     "TegdesignError": "errors:TegdesignError",
+    "array": "design.array:array",
     "compare": "design.compare:compare",
     "curve": "design.scan:curve",
     "find_material": "material.library:find",
@@ -46,6 +49,7 @@ _HOMES = {
     "rate": "design.rate:rate",
     "read_brief": "design.brief:read_brief",
     "read_design": "design.design:read_design",
+    "rows": "design.rows:rows",
     "size": "design.size:size",
     "write_sheet": "sheet:write_sheet",
 }
@@ -57,6 +61,7 @@ __all__ = [
     "Design",
     "InputError",
     "TegdesignError",
+    "array",
     "compare",
     "curve",
     "find_material",
@@ -67,6 +72,7 @@ __all__ = [
     "rate",
     "read_brief",
     "read_design",
+    "rows",
     "size",
     "write_sheet",
 ]

@@ -64,17 +64,27 @@ def conversion(unit: str, target: str, difference: bool = False) -> tuple[float,
     return _clean(one - zero if zero else one), float(zero)
 
 
-_PREFIXES = {"": 1.0, "n": 1e-9, "u": 1e-6, "m": 1e-3, "k": 1e3, "M": 1e6}
+_PREFIXES = {"": 1.0, "n": 1e-9, "u": 1e-6, "m": 1e-3, "k": 1e3, "M": 1e6, "G": 1e9}
+_ELECTRONVOLT = 1.602176634e-19  # J, exact by the definition of the SI
+_COMMON = {  # units that files of computed materials are full of
+    ("eV", "J"): _ELECTRONVOLT,
+    ("meV/K", "J/K"): _ELECTRONVOLT * 1e-3,
+    ("1/cm^3", "1/m^3"): 1e6,
+    ("nm^3", "m^3"): 1e-27,
+    ("cm^2/V/s", "m^2/V/s"): 1e-4,
+}
 
 
 def _direct(unit: str, target: str, difference: bool) -> tuple[float, float] | None:
-    """Return the conversion of the target itself, of its first unit with an SI prefix, and of degC; else None.
+    """Return the conversion of the target, of its first unit with an SI prefix, of degC and a few more; else None.
 
     These need no library, and loading its list of units takes a third of the time of a whole job; the tests hold
     them against it.
     """
     if target == "K" and unit == "degC":
         return 1.0, 0.0 if difference else 273.15
+    if (unit, target) in _COMMON:
+        return _COMMON[unit, target], 0.0
     asked, wanted = (_POWER.sub(r"^\1", text).replace("**", "^").replace(" ", "") for text in (unit, target))
     prefix = asked.removesuffix(wanted)
     if prefix + wanted != asked or prefix not in _PREFIXES:

@@ -162,3 +162,11 @@ def test_degrees_celsius_need_no_library():
     assert _direct("degC", "K", False) == (1.0, 273.15)
     assert _direct("degC", "K", True) == (1.0, 0.0)
     assert _direct("cm2", "m^2", False) is None
+
+
+def test_common_conversions_are_those_of_the_units_library():
+    from tegdesign.quantity import _COMMON, _registry
+
+    for (unit, target), factor in _COMMON.items():
+        exact = _registry().Quantity(1.0, unit.replace("^", "**")).to(target.replace("^", "**")).magnitude
+        assert_allclose(factor, exact, rtol=1e-15)

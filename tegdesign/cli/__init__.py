@@ -19,6 +19,8 @@ COMMANDS = {
     "size": "Size a generator for a brief: design file, report, sheet.",
     "rate": "Rate a given design: report, operating table, curves, maps.",
     "compare": "Rank pairs of materials for a brief.",
+    "rows": "Stand the module of a design in rows along its source stream.",
+    "array": "Join modules at unequal temperatures: mismatch, faults, connections.",
     "sheet": "Write the design sheet of a given design, PDF or Markdown.",
     "materials": "List, show and check thermoelectric materials.",
 }

@@ -1,4 +1,4 @@
-"""``tegdesign materials``: list the library, show one material, check a file, print the schema of files."""
+"""``tegdesign materials``: list the library, show a material, check a file, fit a table, print the schema of files."""
 
 from __future__ import annotations
 
@@ -11,6 +11,7 @@ import typer
 import typer.core
 
 from tegdesign.cli import output
+from tegdesign.cli.materials_fit import fit
 from tegdesign.errors import InputError
 
 if TYPE_CHECKING:
@@ -43,6 +44,9 @@ FolderOption = Annotated[
 def list_materials(
     context: typer.Context,
     polarity: Annotated[Literal["n", "p"] | None, typer.Option(help="Only n-type or only p-type.")] = None,
+    kind: Annotated[
+        str | None, typer.Option(metavar="KIND", help="Only measured ones (table) or only computed ones (bands).")
+    ] = None,
     covers: Annotated[
         str | None,
         typer.Option(metavar="SPAN", help='Only those measured over the whole span, "300 K..500 K".'),
@@ -70,14 +74,18 @@ def list_materials(
       tegdesign materials skutterudite-n --at "300 K, 500 K, 700 K"
       tegdesign materials check materials/skutterudite-n.toml
     """
-    given = (polarity, covers, service_above, with_, without, folder, json, csv, to)
+    given = (polarity, kind, covers, service_above, with_, without, folder, json, csv, to)
     if context.invoked_subcommand is not None:
         if any(given):
             raise typer.BadParameter(f"options of '{context.invoked_subcommand}' go behind it")
         return
+    from tegdesign.material.bands import view
+    from tegdesign.material.file import KINDS
     from tegdesign.quantity import parse
 
     style = output.style(json, csv)
+    if kind not in (None, *KINDS):
+        raise InputError(f"--kind: '{kind}' is no kind of material; the kinds are {', '.join(KINDS)}")
     span = _span(covers) if covers else None
     limit = parse(service_above, "K") if service_above else 0.0
     wanted = []
@@ -85,6 +93,7 @@ def list_materials(
         tags = set(material.hazard_tags)
         if (
             polarity in (None, material.polarity)
+            and kind in (None, view.kind(material))
             and (span is None or (material.range[0] <= span[0] and span[1] <= material.range[1]))
             and material.service_limit.value >= limit
             and tags >= set(with_ or ())
@@ -130,6 +139,7 @@ def _listing(found: list[Material], style: output.Style) -> str:
                 f"{record['peak_figure_of_merit']:.2f}",
                 f"{record['peak_temperature_K']:.0f}",
                 ", ".join(material.hazard_tags),
+                record["kind"],
                 material.composition,
             ]
         )
@@ -142,6 +152,7 @@ def _listing(found: list[Material], style: output.Style) -> str:
         "peak zT",
         "at [K]",
         "hazard tags",
+        "kind",
     ]
     return output.table_text([*heads, "composition"], rows, right=(2, 5, 6))
 
@@ -159,14 +170,18 @@ def _cell(value: object) -> object:
 _SUMMARY = (
     "name", "polarity", "composition", "temperature_min_K", "temperature_max_K", "service_limit_K",
     "service_limit_basis", "air_limit_K", "air_limit_basis", "density_kg_per_m3", "density_basis",
-    "peak_figure_of_merit", "peak_temperature_K", "hazard_tags", "source", "doi", "verification", "warnings",
+    "peak_figure_of_merit", "peak_temperature_K", "hazard_tags", "source", "doi", "verification", "warnings", "kind",
 )  # fmt: skip
 
 
 def _summary(material: Material) -> dict[str, Any]:
     import numpy as np
 
-    table = material.properties()
+    from tegdesign.material.bands import view
+
+    kind = view.kind(material)
+    fine = None if kind == "table" else np.linspace(*material.range, 201)  # no measured points to choose from
+    table = material.properties(fine)
     peak = int(np.nanargmax(table["figure_of_merit"]))
     air = material.air_limit
     values = (
@@ -174,7 +189,7 @@ def _summary(material: Material) -> dict[str, Any]:
         material.service_limit.basis, air.value if air else None, air.basis if air else "",
         material.density.value, material.density.basis,
         float(table["figure_of_merit"][peak]), float(table["temperature_K"][peak]), material.hazard_tags,
-        material.source, material.doi, material.verification, material.warnings,
+        material.source, material.doi, material.verification, material.warnings, kind,
     )  # fmt: skip
     return dict(zip(_SUMMARY, values, strict=True))
 
@@ -186,10 +201,26 @@ def show(
     ],
     at: Annotated[
         str | None,
-        typer.Option(metavar="LIST", help='Temperatures instead of the measured ones, "300 K, 400 K".'),
+        typer.Option(
+            metavar="LIST",
+            help='Temperatures of the values, of the bands and of the best doping, "300 K, 400 K"; '
+            "if not given, the measured ones or steps of 50 K, and for bands and best doping the middle of the range.",
+        ),
     ] = None,
+    doping: Annotated[
+        str | None, typer.Option(metavar="N", help='Look at another doping, "3e19 1/cm^3" (kind bands only).')
+    ] = None,
+    grain_size: Annotated[
+        str | None, typer.Option(metavar="D", help='Look at another grain size, "200 nm" (kind bands only).')
+    ] = None,
+    against_doping: Annotated[
+        bool,
+        typer.Option(
+            "--against-doping", help="Values and figure against doping, at the temperatures of --at (kind bands only)."
+        ),
+    ] = False,
     figure: Annotated[
-        Path | None, typer.Option(metavar="FILE", help="Draw the four curves into a .png, .pdf or .svg file.")
+        Path | None, typer.Option(metavar="FILE", help="Draw the curves into a .png, .pdf or .svg file.")
     ] = None,
     folder: FolderOption = None,
     json: output.JsonOption = False,
@@ -198,28 +229,64 @@ def show(
 ) -> None:
     """Show one material: what it is, where its values come from, what to mind, and the values.
 
+    Of one computed from bands also level, carriers and bands, the best doping, and how far it is off the measured
+    material of its family.
+
     \b
     Examples:
       tegdesign materials skutterudite-n
       tegdesign materials skutterudite-n --at "300, 500, 700 K" --csv
       tegdesign materials skutterudite-n --figure skutterudite-n.png
+      tegdesign materials lead-telluride-p-bands --doping "5e19 1/cm^3" --at "600 K"
+      tegdesign materials lead-telluride-p-bands --against-doping --at "400, 700 K" --figure doping.png
     """
     from tegdesign.material import library
+    from tegdesign.material.bands import describe, view
+    from tegdesign.sheet import material_text
 
     style = output.style(json, csv)
-    material = library.find(name, folder or ())
-    table = material.properties(_temperatures(at) if at else None)
-    if style == "json":
-        text = output.json_text(_description(material) | {"properties": table})
-    elif style == "csv":
-        text = output.csv_text(list(table), list(zip(*table.values(), strict=True)))
+    folders = folder or ()
+    material = view.made(
+        library.find(name, folders),
+        None if doping is None else 1e6 * _value("--doping", doping, "1/cm^3"),
+        None if grain_size is None else _value("--grain-size", grain_size, "m"),
+    )
+    asked = _temperatures(at) if at else None
+    places = asked or [view.middle(material)]
+    if against_doping:
+        table = view.against_doping(view.computed(material, "--against-doping"), places)
     else:
-        text = _card(material) + "\n\n" + _values(table)
+        table = view.properties(material, asked)
+    told = describe.describe(material, places, folders)
+    if style == "json":
+        text = output.json_text(_description(material) | told | {"properties": table})
+    elif style == "csv":
+        wide = describe.wide(material, table, told)
+        text = output.csv_text(list(wide), list(zip(*wide.values(), strict=True)))
+    else:
+        text = material_text.card(material, told) + "\n\n" + material_text.tables(table, told, against_doping)
     if figure is not None:
-        from tegdesign.sheet.material import save_figure
+        measured = describe.measured_twin(material, folders)
+        if against_doping:
+            from tegdesign.sheet import material_doping
 
-        save_figure(material, figure)
+            computed = view.computed(material, "--against-doping")
+            material_doping.save_figure(computed, places, figure, measured, told["laid_over"]["doping_1_per_m3"])
+        else:
+            from tegdesign.sheet.material import save_figure
+
+            save_figure(material, figure, measured)
     output.emit(text, to)
+
+
+def _value(option: str, text: str, unit: str) -> float:
+    """Return the number of an option in ``unit``; what is wrong with it is said of the option."""
+    from tegdesign.quantity import parse
+
+    try:
+        return parse(text, unit)
+    except InputError as error:
+        raise InputError(f"{option}: {error}") from error
 
 
 def _description(material: Material) -> dict[str, Any]:
@@ -230,54 +297,11 @@ def _description(material: Material) -> dict[str, Any]:
         "compilation": material.compilation,
         "obtained": material.obtained,
         "relative_standard_uncertainty": share | {"basis": material.uncertainty_basis},
+        "electronic_thermal_conductivity_basis": material.electronic_basis,
         "hazards": material.hazards,
         "notes": material.notes,
         "path": material.path,
     }
-
-
-def _card(material: Material) -> str:
-    import textwrap
-
-    s, rho, kappa = (f"{100 * share:.3g} %" for share in material.uncertainty)
-    air = material.air_limit
-    entries = [
-        ("composition", material.composition),
-        ("polarity", material.polarity),
-        *(("warning", warning) for warning in material.warnings),
-        ("known", f"from {material.range[0]:g} K to {material.range[1]:g} K"),
-        ("service limit", f"{material.service_limit.value:g} K; {material.service_limit.basis}"),
-        ("air limit", f"{air.value:g} K; {air.basis}" if air else "not stated"),
-        ("density", f"{material.density.value:g} kg/m3; {material.density.basis}"),
-        ("uncertainty", f"S {s}, rho {rho}, kappa {kappa} (1 sigma); {material.uncertainty_basis}"),
-        ("source", material.source or "not stated"),
-        ("doi", material.doi or "not stated"),
-        ("verification", material.verification),
-        ("compilation", material.compilation),
-        ("obtained", material.obtained),
-        ("hazards", material.hazards or "not stated"),
-        ("hazard tags", ", ".join(material.hazard_tags) or "none"),
-        *(("note", note) for note in material.notes),
-        ("file", material.path),
-    ]
-    indent = " " * 17
-    lines = [material.name]
-    for label, words in entries:
-        if words:
-            text = words.rstrip("; ")
-            lines.append(textwrap.fill(text, 110, initial_indent=f"  {label:<15}", subsequent_indent=indent,
-                                       break_long_words=False, break_on_hyphens=False))  # fmt: skip
-    return "\n".join(lines)
-
-
-def _values(table: dict[str, Any]) -> str:
-    heads = ["T [K]", "S [uV/K]", "rho [mohm cm]", "kappa [W/m/K]", "power factor [mW/m/K2]", "zT [1]"]
-    factors, digits = (1.0, 1e6, 1e5, 1.0, 1e3, 1.0), (2, 2, 4, 4, 3, 3)
-    columns = [
-        ["-" if value != value else f"{value * factor:.{places}f}" for value in column]
-        for column, factor, places in zip(table.values(), factors, digits, strict=True)
-    ]
-    return output.table_text(heads, list(zip(*columns, strict=True)), right=range(6))
 
 
 @materials.command()
@@ -322,6 +346,9 @@ def schema(to: output.OutputOption = None) -> None:
     from tegdesign.material.file import schema as schema_of
 
     output.emit(output.json_text(schema_of()), to)
+
+
+materials.command()(fit)
 
 
 def _temperatures(text: str) -> list[float]:

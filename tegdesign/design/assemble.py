@@ -3,25 +3,29 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import Any
+from functools import lru_cache
+from typing import TYPE_CHECKING, Any, cast
 
 import numpy as np
 
 from tegdesign.design.design import Design
-from tegdesign.design.parts import Losses, Stack
+from tegdesign.design.parts import Losses, Made, Stack
 from tegdesign.errors import InputError
 from tegdesign.material.library import find
 from tegdesign.material.material import Material
 from tegdesign.module.module import Modules
 
+if TYPE_CHECKING:
+    from tegdesign.material.bands.material import BandMaterial
 
-def material(name: str, polarity: str, folder: str | None) -> Material:
-    """Return a material by name and insist on its polarity.
+
+def material(name: str, polarity: str, folder: str | None, made: Made | None = None) -> Material:
+    """Return a material by name, made as asked for, and insist on its polarity.
 
     Raises
     ------
     InputError
-        Unknown name, or the material is of the other polarity.
+        Unknown name, the material is of the other polarity, or it cannot be made so.
     """
     found = find(name, [folder] if folder else [])
     if found.polarity != polarity:
@@ -29,7 +33,39 @@ def material(name: str, polarity: str, folder: str | None) -> Material:
             f"materials.{polarity}: '{name}' is {found.polarity}-type; choose one of type {polarity} "
             f"(tegdesign materials --polarity {polarity} lists them)"
         )
-    return found
+    return found if made is None or made.as_filed else made_of(found, made, polarity)
+
+
+def computed(found: Material, polarity: str) -> BandMaterial:
+    """Return a material whose properties are computed, so that it can be made in several ways.
+
+    Raises
+    ------
+    InputError
+        It is a table of one sample.
+    """
+    if found.kind == "bands":  # asked without loading what tables do not need
+        return cast("BandMaterial", found)
+    raise InputError(
+        f"materials.make_{polarity}: '{found.name}' is a table of one sample, its doping and grain size are fixed; use "
+        "a material of kind bands (tegdesign materials lists the kinds)"
+    )
+
+
+@lru_cache(maxsize=256)
+def made_of(found: Material, made: Made, polarity: str, tolerance: float = 1e-8) -> Material:
+    """Return a computed material made as asked for, its curves within ``tolerance`` of the integrals.
+
+    Raises
+    ------
+    InputError
+        It is a table of one sample, or the doping or grain size is out of its bounds.
+    """
+    from tegdesign.material.bands.crystal import Doping
+
+    whole = computed(found, polarity)
+    doping = None if made.doping is None else Doping(made.doping, made.doping_hot, made.graded_between)
+    return whole.made(doping, made.grain_size, tolerance)
 
 
 def stack_values(stack: Stack, losses: Losses) -> dict[str, float]:
@@ -48,7 +84,7 @@ def stack_values(stack: Stack, losses: Losses) -> dict[str, float]:
         "filler_exponent": exponent,
         "emittance_hot": stack.emittance_hot * rays,
         "emittance_cold": stack.emittance_cold * rays,
-        "edge_conductance": stack.edge_conductance * losses.bypass,
+        "edge_conductance": stack.bridges * losses.bypass,
         "lead_resistance": stack.lead_resistance * losses.leads,
         "spreading": float(losses.spreading and losses.substrates),
     }
@@ -68,9 +104,9 @@ def modules_of(designs: Sequence[Design], losses: Sequence[Losses] | None = None
         The designs are not all of the same pair.
     """
     chosen = designs[0].materials
-    if any((d.materials.n, d.materials.p) != (chosen.n, chosen.p) for d in designs):
+    if any(d.materials.pair != chosen.pair for d in designs):
         raise InputError("materials differ between the designs of one table; rate them one by one")
-    pair = [material(getattr(chosen, side), side, chosen.folder) for side in ("n", "p")]
+    pair = [material(*leg, chosen.folder, make) for leg, make in chosen.legs]
     switches = losses or [d.losses for d in designs]
     rows = [{**stack_values(d.stack, off), **_geometry(d)} for d, off in zip(designs, switches, strict=True)]
     columns: dict[str, Any] = {name: np.array([row[name] for row in rows], dtype=float) for name in rows[0]}

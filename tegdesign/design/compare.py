@@ -4,17 +4,20 @@ from __future__ import annotations
 
 import os
 from collections.abc import Callable, Sequence
-from dataclasses import asdict, dataclass
+from dataclasses import asdict, dataclass, replace
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-from tegdesign.design.assemble import material
+from tegdesign.design.assemble import computed, material
 from tegdesign.design.brief import Brief, as_brief
-from tegdesign.design.evaluate import Candidates, Evaluation, Limit, evaluate
-from tegdesign.design.search import Problems, score, search
-from tegdesign.design.size import UNIT_OF_AIM, connections, job_of, silent
+from tegdesign.design.deciding import deciding, only
+from tegdesign.design.evaluate import Candidates, Evaluation, evaluate
+from tegdesign.design.limits import Limit
+from tegdesign.design.search import refine, search
+from tegdesign.design.size import AFTER_MAKING, UNIT_OF_AIM, connections, job_of, silent
+from tegdesign.design.space import Problems, score
 from tegdesign.errors import InputError
 from tegdesign.material.curve import Array
 from tegdesign.material.library import find, names
@@ -53,6 +56,8 @@ class Rank:
     compatibility_spread: float
     outside_data_K: float
     hazards: str
+    doping_n_per_m3: float | None = None
+    doping_p_per_m3: float | None = None
 
 
 @dataclass(frozen=True)
@@ -100,7 +105,10 @@ class Comparison:
 def compare(
     brief: Brief | str | os.PathLike[str], *, progress: Callable[[float], None] = silent
 ) -> Comparison:
-    """Rank every allowed pair of materials for a brief; lists left empty mean the whole library.
+    """Rank every allowed pair of materials for a brief; lists left empty mean all measured materials.
+
+    Where a side has something free, its computed materials are ranked, each made as suits the brief with its best
+    partner.
 
     Raises
     ------
@@ -110,21 +118,29 @@ def compare(
     brief = as_brief(brief)
     sides = {side: _allowed(brief, side) for side in ("n", "p")}
     materials = [*sides["n"], *sides["p"]]
-    job = job_of(brief, materials)
+    whole = job_of(brief, materials)
     first_p = len(sides["n"])
     pairs = [(i, first_p + k) for i in range(first_p) for k in range(len(sides["p"]))]
     ways = list(connections(brief))
     table = np.array([(n, p, series, parallel) for n, p in pairs for series, parallel in ways])
     problems = Problems(table[:, 0], table[:, 1], table[:, 2].astype(float), table[:, 3].astype(float))
 
-    def best_of_each_pair(scores: Array) -> NDArray[np.intp]:
+    def best_of_each_pair(_: Problems, scores: Array) -> NDArray[np.intp]:
         blocks = scores.reshape(len(pairs), len(ways))
         return np.asarray(np.arange(len(pairs)) * len(ways) + np.argmax(blocks, axis=1))
 
-    problems, space, u, _ = search(brief, job, problems, best_of_each_pair, progress)
-    which = np.arange(len(pairs))
-    best = evaluate(job, space.candidates(which, u))
-    equal = evaluate(job, _equal_areas(best.candidates))
+    states = deciding(brief, whole, problems)
+    found = search(brief, only(whole, states), problems, best_of_each_pair, False, progress)
+    if any(brief.materials.making(side).free for side in ("n", "p")):
+        from tegdesign.design.making import make_each
+
+        materials = make_each(brief, only(whole, states), found)
+        whole = replace(whole, materials=materials)
+        found = refine(brief, only(whole, states), found.problems, found.u, found.guess, AFTER_MAKING)
+    problems, which = found.problems, np.arange(len(pairs))
+    guess = found.guess if len(states) == len(whole.states) else None
+    best = evaluate(whole, found.space.candidates(which, found.u), guess=guess)
+    equal = evaluate(whole, _equal_areas(best.candidates), guess=best.guess)
     values = score(brief, best)
     order = np.argsort(-values, kind="stable")
     ranks, dropped = [], []
@@ -139,15 +155,20 @@ def compare(
 
 
 def _allowed(brief: Brief, side: str) -> list[Material]:
-    folder = brief.materials.folder
+    """Return the materials named for a side, or all measured ones; all computed ones where they shall be made."""
+    folder, making = brief.materials.folder, brief.materials.making(side)
     wanted: tuple[str, ...] = getattr(brief.materials, side)
-    if wanted:
-        return [material(name, side, folder) for name in dict.fromkeys(wanted)]
     folders = [folder] if folder else []
-    found = [find(name, folders) for name in names(folders)]
-    allowed = [m for m in found if m.polarity == side]
-    if not allowed:
-        raise InputError(f"materials.{side}: the library has no {side}-type material")
+    kind = "table" if making.as_filed else "bands"
+    listed = wanted or [
+        name for name in names(folders) if (m := find(name, folders)).polarity == side and m.kind == kind
+    ]
+    if not listed:
+        raise InputError(f"materials.{side}: the library has no {side}-type material of kind {kind}")
+    allowed = [material(name, side, folder, making.given) for name in dict.fromkeys(listed)]
+    if making.free:
+        for m in allowed:
+            computed(m, side)
     return allowed
 
 
@@ -190,7 +211,7 @@ def _tightest(e: Evaluation, k: int) -> str:
 def _rank(e: Evaluation, equal: Evaluation, materials: Sequence[Material], k: int) -> Rank:
     c, n, p = e.candidates, materials[e.candidates.n[k]], materials[e.candidates.p[k]]
     count = float(c.modules[k])
-    power = float(e.rated.power[k]) * count
+    power = float(e.power[k])
     hot, cold = float(e.rated.hot_junction[k]), float(e.rated.cold_junction[k])
     opened = float(e.opened.hot_junction[k])
     mass = float(e.material_mass[k])
@@ -204,7 +225,7 @@ def _rank(e: Evaluation, equal: Evaluation, materials: Sequence[Material], k: in
         limit=_tightest(e, k),
         power_W=power,
         efficiency=float(e.efficiency[k]),
-        power_per_footprint_W_per_m2=float(e.rated.power[k] / c.footprint[k]),
+        power_per_footprint_W_per_m2=power / (count * float(c.footprint[k])),
         power_per_material_mass_W_per_kg=power / mass,
         material_mass_kg=mass,
         voltage_V=float(e.rated.voltage[k] * c.series[k]),
@@ -223,6 +244,8 @@ def _rank(e: Evaluation, equal: Evaluation, materials: Sequence[Material], k: in
         compatibility_spread=_compatibility(n, p, hot, cold),
         outside_data_K=outside,
         hazards=", ".join(dict.fromkeys([*n.hazard_tags, *p.hazard_tags])),
+        doping_n_per_m3=n.majority_doping,
+        doping_p_per_m3=p.majority_doping,
     )
 
 

@@ -8,8 +8,10 @@ from typing import Any
 
 from pydantic import BaseModel, model_validator
 
-from tegdesign.design.brief import MATERIAL_FILE, check_direction
-from tegdesign.design.parts import Aim, Count, Length, Losses, MaterialUse, Require, Stack, Thickness
+from tegdesign.design.brief import MATERIAL_FILE, check_states
+from tegdesign.design.condition import Condition
+from tegdesign.design.parts import Aim, Count, Length, Losses, Made, MaterialUse, Require, Stack, Thickness
+from tegdesign.design.states import StateEntry, conditions
 from tegdesign.document import given, load, to_toml, write_whole
 from tegdesign.quantity import write
 from tegdesign.system.boundary import AnyBoundary
@@ -24,6 +26,18 @@ class Chosen(MaterialUse):
 
     n: str
     p: str
+    make_n: Made | None = None
+    make_p: Made | None = None
+
+    @property
+    def legs(self) -> tuple[tuple[tuple[str, str], Made | None], ...]:
+        """Name and polarity of the material of each leg, and how it is made."""
+        return ((self.n, "n"), self.make_n), ((self.p, "p"), self.make_p)
+
+    @property
+    def pair(self) -> tuple[object, ...]:
+        """What makes two designs of the same materials."""
+        return self.n, self.p, self.make_n, self.make_p
 
 
 class Geometry(Part):
@@ -102,6 +116,7 @@ class Design(Part):
     require: Require = Require()
     stack: Stack = Stack()
     losses: Losses = Losses()
+    states: tuple[StateEntry, ...] = ()
     assumed: tuple[str, ...] = ()
 
     @model_validator(mode="before")
@@ -113,9 +128,14 @@ class Design(Part):
         return data
 
     @model_validator(mode="after")
-    def _direction(self) -> Design:
-        check_direction(self.source, self.sink)
+    def _sound(self) -> Design:
+        check_states(self.conditions)
         return self
+
+    @property
+    def conditions(self) -> tuple[Condition, ...]:
+        """Every state to be solved: the rated one first, then its open circuit, then the named ones."""
+        return conditions(self.source, self.sink, self.load, self.states)
 
     def text(self) -> str:
         """Return the design as the TOML text of its file."""

@@ -1,4 +1,4 @@
-"""Candidate designs of one job, evaluated all at once: operating point, open circuit, limits, aim."""
+"""Candidate designs of one job, evaluated all at once in all its states: operating points, limits, aim."""
 
 from __future__ import annotations
 
@@ -11,31 +11,53 @@ import numpy as np
 from numpy.typing import NDArray
 
 from tegdesign.design.assemble import stack_values
+from tegdesign.design.condition import Condition
+from tegdesign.design.limits import Limit, hot_allowance, limits
 from tegdesign.design.parts import Aim, Losses, Require, Stack
 from tegdesign.material.curve import Array
 from tegdesign.material.material import Material
-from tegdesign.module.module import Modules
-from tegdesign.system.boundary import AnyBoundary
-from tegdesign.system.load import AnyLoad, GivenCurrent
+from tegdesign.module.module import EXACT, Accuracy, Modules
+from tegdesign.system.law import join
+from tegdesign.system.load import mixed
 from tegdesign.system.operating_point import OperatingPoint, operating_point
 
 # Weights of the score: broken temperature limits, then missed requirements, then the aim.
 HARD, SOFT = -1e8, -1e4
+# For searches, together about 1e-4 of the junction difference; those that need more rounds are no candidates.
+_ROUGH_STEP, _ROUGH_ROUNDS, _ROUGH_LEGS = 5e-3, 6, Accuracy(points=3, tolerance=1e-6, max_iterations=8)
 
 
 @dataclass(frozen=True)
 class Job:
-    """What all candidates share."""
+    """What all candidates share; of the states the first is the rated one, the second its open circuit."""
 
-    source: AnyBoundary
-    sink: AnyBoundary
-    load: AnyLoad
+    states: tuple[Condition, ...]
     stack: Stack
     losses: Losses
     require: Require
     aim: Aim
     hold: float
     materials: Sequence[Material]
+
+    @property
+    def rated(self) -> Condition:
+        """The conditions of the rated state."""
+        return self.states[0]
+
+    @cached_property
+    def ranges(self) -> Array:
+        """First and last data point and service limit of every material [K], (3, materials)."""
+        return np.array([(*m.range, m.service_limit.value) for m in self.materials]).T
+
+    def hottest(self, n: NDArray[np.intp], p: NDArray[np.intp]) -> Array:
+        """Return the temperature [K] that the hot junction of pairs (B,) may reach, (states, B)."""
+        _, last, service = self.ranges
+        rows = []
+        for state in self.states:
+            over, asked = hot_allowance(self.require, state)
+            own = np.minimum(last + self.hold, service + over)
+            rows.append(np.minimum(np.minimum(own[n], own[p]), np.inf if asked is None else asked))
+        return np.stack(rows)
 
 
 @dataclass(frozen=True)
@@ -70,51 +92,65 @@ class Candidates:
         return Modules(job.materials, **geometry, **dict[str, Any](stack_values(job.stack, job.losses)))
 
 
-class Limit(NamedTuple):
-    """One limit in one state over the batch: value and bound in the unit, positive ``violation`` where it is broken."""
+class Guess(NamedTuple):
+    """Where to start: junctions [K] and scaled current I L / A_n [A/m], which hardly moves with size; (states, B)."""
 
-    key: str
-    state: str
-    unit: str
-    sense: str  # "most" or "least"
-    value: Array
-    bound: Array
-    scale: Array
+    hot: Array
+    cold: Array
+    scaled_current: Array
 
-    @property
-    def hard(self) -> bool:
-        """Whether it is a limit of temperature: those come before any requirement."""
-        return self.unit == "K"
-
-    @property
-    def violation(self) -> Array:
-        """By how much the bound is broken, in units of ``scale``; negative is room left."""
-        over = self.value - self.bound if self.sense == "most" else self.bound - self.value
-        return np.asarray(over / self.scale)
+    def take(self, which: Any) -> Guess:
+        """Return the guess for the candidates ``which``."""
+        return Guess(*(v[:, which] for v in self))
 
 
 @dataclass(frozen=True)
 class Evaluation:
-    """Candidates with their rated and open-circuit state."""
+    """Candidates with their operating points in every state of the job, by its name."""
 
     job: Job
     candidates: Candidates
-    rated: OperatingPoint
-    opened: OperatingPoint
+    points: dict[str, OperatingPoint]
+
+    @property
+    def rated(self) -> OperatingPoint:
+        """The rated state, the first of the job."""
+        return self.points[self.job.states[0].name]
+
+    @property
+    def opened(self) -> OperatingPoint:
+        """The open circuit of the rated state, the second of the job."""
+        return self.points[self.job.states[1].name]
+
+    @cached_property
+    def guess(self) -> Guess:
+        """Where to start with candidates of much the same thermal resistance."""
+        points, c = self.points.values(), self.candidates
+        hot, cold, current = (
+            np.stack([getattr(p, name) for p in points]) for name in ("hot_junction", "cold_junction", "current")
+        )
+        return Guess(hot, cold, current * c.leg_length / c.side_n**2)
 
     @cached_property
     def limits(self) -> list[Limit]:
         """All limits that the job sets, in every state they apply to."""
-        return list(_limits(self))
+        return list(limits(self))
+
+    @cached_property
+    def violations(self) -> Array:
+        """Violation of every limit, (limits, B)."""
+        return np.stack([limit.violation for limit in self.limits])
+
+    @cached_property
+    def hard(self) -> NDArray[np.bool_]:
+        """Which of the limits are of temperature, (limits,)."""
+        return np.array([limit.hard for limit in self.limits])
 
     @cached_property
     def violation(self) -> Array:
-        """Largest violation of each candidate, infinite where no operating point was found."""
-        worst = np.full(self.candidates.n.size, -np.inf)
-        for limit in self.limits:
-            worst = np.maximum(worst, limit.violation)
-        solved = self.rated.converged & self.opened.converged
-        return np.where(solved, worst, np.inf)
+        """Largest violation of each candidate, infinite where a state has no operating point."""
+        solved = np.all([point.converged for point in self.points.values()], axis=0)
+        return np.where(solved, self.violations.max(axis=0), np.inf)
 
     @cached_property
     def shortfall(self) -> Array:
@@ -127,11 +163,8 @@ class Evaluation:
         return self._missed(hard=True)
 
     def _missed(self, hard: bool) -> Array:
-        total = np.zeros(self.candidates.n.size)
-        for limit in self.limits:
-            if limit.hard == hard:
-                total += np.clip(np.nan_to_num(limit.violation, nan=1e3), 0.0, 1e3)
-        return total
+        violations = self.violations[self.hard == hard]
+        return np.asarray(np.clip(np.where(np.isnan(violations), 1e3, violations), 0.0, 1e3).sum(axis=0))
 
     @cached_property
     def material_mass(self) -> Array:
@@ -141,20 +174,38 @@ class Evaluation:
         legs = density[c.n] * c.side_n**2 + density[c.p] * c.side_p**2
         return np.asarray(c.modules * c.couples * c.leg_length * legs)
 
+    def delivered(self, state: Condition) -> Array:
+        """Return the power that reaches the user in a loaded state [W]."""
+        c, point = self.candidates, self.points[state.name]
+        before = self.points.get(state.start) or self.points.get(state.opened) or point
+        total = (point.voltage * c.series, point.current * c.parallel, before.voltage * c.series)
+        return state.load.delivery(*total).power  # type: ignore[no-any-return]
+
+    def efficiency_in(self, state: Condition) -> Array:
+        """Return that power over the heat of the source: all of it where it is given, else what is drawn."""
+        given = state.source.given_heat
+        heat = self.points[state.name].heat_in * self.candidates.modules if given is None else given
+        with np.errstate(divide="ignore", invalid="ignore"):
+            return np.asarray(np.where(heat != 0, self.delivered(state) / heat, 0.0))
+
     @cached_property
     def efficiency(self) -> Array:
-        """Power over the heat of the source: all of it where it is given, else what the generator draws."""
-        given = self.job.source.given_heat
-        return self.rated.efficiency if given is None else self.rated.power * self.candidates.modules / given
+        """Efficiency of the rated state."""
+        return self.efficiency_in(self.job.rated)
+
+    @cached_property
+    def power(self) -> Array:
+        """Power that reaches the user in the rated state [W]."""
+        return self.delivered(self.job.rated)
 
     @cached_property
     def objective(self) -> Array:
         """The quantity aimed at: W, 1, W/m^2 or W/kg."""
-        power = self.rated.power * self.candidates.modules
+        power = self.power
         aims: dict[Aim, Callable[[], Array]] = {
             "power": lambda: power,
             "efficiency": lambda: self.efficiency,
-            "power per footprint": lambda: self.rated.power / self.candidates.footprint,
+            "power per footprint": lambda: power / (self.candidates.footprint * self.candidates.modules),
             "power per material mass": lambda: power / self.material_mass,
         }
         return aims[self.job.aim]()
@@ -174,89 +225,39 @@ def evaluate(
     candidates: Candidates,
     *,
     tolerance: float = 1e-7,
-    check: bool = False,
-    guess: tuple[Array, Array, Array] | None = None,
+    rough: bool = False,
+    guess: Guess | None = None,
 ) -> Evaluation:
-    """Solve the rated and the open-circuit state of all candidates in one batch each.
+    """Solve all states of all candidates in one batch.
 
-    Raises
-    ------
-    ConvergenceError
-        With ``check``, when any candidate has no operating point.
+    Parameters
+    ----------
+    tolerance : float
+        Of the operating points, see ``operating_point``.
+    rough : bool
+        Solve to about 1e-4 of the junction difference only, whatever ``tolerance``: good enough to search.
+    guess : Guess, optional
+        Where to start.
     """
-    modules = candidates.batch(job)
-    count = candidates.modules
-    source = job.source.law(candidates.footprint, count)
-    sink = job.sink.law(candidates.footprint, count)
-    law = job.load.law(candidates.series, candidates.parallel)
-    rated = operating_point(modules, source, sink, law, tolerance=tolerance, check=check, guess=guess)
-    known = np.isfinite(rated.hot_junction) & np.isfinite(rated.cold_junction)
-    start = (
-        np.where(known, rated.hot_junction, 400.0),
-        np.where(known, rated.cold_junction, 320.0),
-        np.zeros(count.size),
+    count, states = candidates.modules, job.states
+    start = None
+    if guess is not None:
+        if_unknown = zip(guess, (400.0, 320.0, 0.0), strict=True)
+        hot, cold, scaled = (np.where(np.isfinite(v), v, other) for v, other in if_unknown)
+        start = hot.ravel(), cold.ravel(), (scaled * candidates.side_n**2 / candidates.leg_length).ravel()
+    point = operating_point(
+        candidates.batch(job).tile(len(states)),
+        join([state.source.law(candidates.footprint, count) for state in states]),
+        join([state.sink.law(candidates.footprint, count) for state in states]),
+        mixed([state.load.law(candidates.series, candidates.parallel) for state in states]),
+        tolerance=_ROUGH_STEP if rough else tolerance,
+        max_iterations=_ROUGH_ROUNDS if rough else 60,
+        check=False,
+        guess=start,
+        legs=_ROUGH_LEGS if rough else EXACT,
+        extrapolate=rough,
     )
-    nothing = GivenCurrent.model_construct(current=0.0).law(candidates.series, candidates.parallel)
-    opened = operating_point(modules, source, sink, nothing, tolerance=tolerance, check=check, guess=start)
-    return Evaluation(job, candidates, rated, opened)
-
-
-def _limits(e: Evaluation) -> Any:
-    c, job, require = e.candidates, e.job, e.job.require
-    ones = np.ones(c.n.size)
-    kelvin = 50.0 * ones  # one unit of violation: 50 K
-    first, last, service = (
-        np.array(column)
-        for column in zip(*((*m.range, m.service_limit.value) for m in job.materials), strict=True)
+    blocks = (slice(k * count.size, (k + 1) * count.size) for k in range(len(states)))
+    return Evaluation(
+        job, candidates, {state.name: point.take(block) for state, block in zip(states, blocks, strict=True)}
     )
-    for state, point in (("rated", e.rated), ("open circuit", e.opened)):
-        hot, cold = point.hot_junction, point.cold_junction
-        for leg, index in (("n", c.n), ("p", c.p)):
-            yield Limit(f"service limit of the {leg} leg", state, "K", "most", hot, service[index], kelvin)
-            yield Limit(
-                f"last data point of the {leg} leg", state, "K", "most", hot, last[index] + job.hold, kelvin
-            )
-            yield Limit(
-                f"first data point of the {leg} leg",
-                state,
-                "K",
-                "least",
-                cold,
-                first[index] - job.hold,
-                kelvin,
-            )
-        if require.hot_junction is not None:
-            yield Limit("required hot junction", state, "K", "most", hot, require.hot_junction * ones, kelvin)
-        if require.cold_junction is not None:
-            yield Limit(
-                "required cold junction", state, "K", "most", cold, require.cold_junction * ones, kelvin
-            )
-    power, voltage = e.rated.power * c.modules, e.rated.voltage * c.series
-    open_voltage = e.opened.voltage * c.series
-    if not job.load.passive:
-        nothing, size = np.zeros(power.size), np.maximum(np.abs(power), 1e-12)
-        yield Limit("power at the leads", "rated", "W", "least", power, nothing, size)
-    asked: list[tuple[str, str, str, str, Array, float | None]] = [
-        ("required power", "rated", "W", "least", power, require.power),
-        ("required efficiency", "rated", "1", "least", e.efficiency, require.efficiency),
-        (
-            "lower end of the voltage window",
-            "rated",
-            "V",
-            "least",
-            voltage,
-            (require.voltage or (None, None))[0],
-        ),
-        (
-            "upper end of the voltage window",
-            "rated",
-            "V",
-            "most",
-            voltage,
-            (require.voltage or (None, None))[1],
-        ),
-        ("open-circuit voltage", "open circuit", "V", "most", open_voltage, require.open_circuit_voltage),
-    ]
-    for key, state, unit, sense, value, bound in asked:
-        if bound is not None:
-            yield Limit(key, state, unit, sense, value, bound * ones, bound * ones)

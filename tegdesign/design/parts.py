@@ -6,6 +6,7 @@ from typing import Annotated, Literal
 
 from pydantic import Field, model_validator
 
+from tegdesign.module.bridge import bar, bolts
 from tegdesign.module.electrode import COPPER_COEFFICIENT, COPPER_RESISTIVITY
 from tegdesign.module.gap import FILLERS
 from tegdesign.quantity import Measure
@@ -23,6 +24,8 @@ Ohm = Annotated[float, Measure("ohm"), Field(ge=0)]
 Volt = Annotated[float, Measure("V"), Field(gt=0)]
 Watt = Annotated[float, Measure("W"), Field(gt=0)]
 Count = Annotated[int, Field(strict=True, ge=1, le=10000)]
+Doping = Annotated[float, Measure("1/m^3", "1/cm^3"), Field(gt=0)]
+GrainSize = Annotated[float, Measure("m", "nm"), Field(gt=0, lt=1e-2)]
 Gap = Annotated[float, Measure("m", "mm"), Field(ge=1e-5, lt=10)]
 
 
@@ -34,11 +37,39 @@ class Plate(Part):
     substrate_conductivity: Conductivity = 24.0
 
 
+class Bolts(Part):
+    """Bolts that clamp one module between its plates, each with its insulating washers and sleeves in series."""
+
+    number: Count
+    diameter: Length
+    length: Length
+    conductivity: Conductivity = 16.0
+    washer_resistance: Annotated[float, Measure("K/W"), Field(ge=0)] = 0.0
+
+    @property
+    def conductance(self) -> float:
+        """Heat conductance of all of them [W/K]."""
+        return float(bolts(self.number, self.diameter, self.length, self.conductivity, self.washer_resistance))
+
+
+class Frame(Part):
+    """Frame or seal round one module, from plate to plate: its section and its height."""
+
+    area: Annotated[float, Measure("m^2", "mm^2"), Field(gt=0, lt=1)]
+    length: Length
+    conductivity: Conductivity
+
+    @property
+    def conductance(self) -> float:
+        """Heat conductance [W/K]."""
+        return float(bar(self.area, self.length, self.conductivity))
+
+
 class Stack(Part):
     """Parts of the module beside the legs. Defaults are typical figures of trade tables, none of any one maker.
 
     Interface 3e-5 m2 K/W (thin graphite foil or a thick grease line), alumina 24 W/m/K, copper 0.3 mm with the
-    resistivity of IEC 60028, joints 2e-9 ohm m2 (laboratory value; bought modules about 3e-9).
+    resistivity of IEC 60028, stainless bolts 16 W/m/K, joints 2e-9 ohm m2 (laboratory value; bought modules about 3e-9).
     """
 
     hot: Plate = Plate()
@@ -57,6 +88,8 @@ class Stack(Part):
     emittance_hot: Fraction = 0.8
     emittance_cold: Fraction = 0.8
     edge_conductance: Annotated[float, Measure("W/K"), Field(ge=0)] = 0.0
+    bolts: Bolts | None = None
+    frame: Frame | None = None
     lead_resistance: Ohm = 0.0
 
     @model_validator(mode="after")
@@ -66,6 +99,11 @@ class Stack(Part):
                 f"filler '{self.filler}' is not one of {', '.join(FILLERS)}; give filler_conductivity for another one"
             )
         return self
+
+    @property
+    def bridges(self) -> float:
+        """Heat conductance beside legs and filler: edge, bolts and frame of one module [W/K]."""
+        return self.edge_conductance + sum(part.conductance for part in (self.bolts, self.frame) if part is not None)
 
     @property
     def filler_law(self) -> tuple[float, float, bool]:
@@ -94,7 +132,11 @@ class Losses(Part):
 
 
 class Require(Part):
-    """What the answer must reach; a requirement that is missed makes the verdict."""
+    """What the answer must reach; a requirement that is missed makes the verdict.
+
+    Power is what reaches the user. The limits with ``short_time`` stand in place of the others in states with a
+    duration; ``short_time_over_service`` is by how much the service limits of the materials may be passed in them.
+    """
 
     power: Watt | None = None
     voltage: tuple[Volt, Volt] | None = None
@@ -102,6 +144,10 @@ class Require(Part):
     efficiency: Fraction | None = None
     hot_junction: Kelvin | None = None
     cold_junction: Kelvin | None = None
+    short_time_hot_junction: Kelvin | None = None
+    short_time_cold_junction: Kelvin | None = None
+    short_time_over_service: Difference = 0.0
+    heat_flux: Annotated[float, Measure("W/m^2", "W/cm^2"), Field(gt=0)] | None = None
 
     @model_validator(mode="after")
     def _window(self) -> Require:
@@ -110,6 +156,33 @@ class Require(Part):
                 f"voltage window is upside down: {self.voltage[0]:g} V is above {self.voltage[1]:g} V"
             )
         return self
+
+
+class Made(Part):
+    """How the material of a leg is made, where its properties are computed from bands; as in its file if not given.
+
+    A graded leg has ``doping`` at the first and ``doping_hot`` at the second temperature of ``graded_between``.
+    """
+
+    doping: Doping | None = None
+    doping_hot: Doping | None = None
+    graded_between: tuple[Kelvin, Kelvin] | None = None
+    grain_size: GrainSize | None = None
+
+    @model_validator(mode="after")
+    def _whole(self) -> Made:
+        if (self.doping_hot is None) != (self.graded_between is None):
+            raise ValueError("a graded leg needs both doping_hot and graded_between; add the other or leave both out")
+        if self.doping_hot is not None and self.doping is None:
+            raise ValueError("a graded leg needs doping (of the cold end) beside doping_hot; add it")
+        if self.graded_between and self.graded_between[0] >= self.graded_between[1]:
+            raise ValueError("graded_between must rise, from the cold to the hot end; exchange its temperatures")
+        return self
+
+    @property
+    def as_filed(self) -> bool:
+        """Whether nothing differs from the file of the material."""
+        return self.doping is None and self.grain_size is None
 
 
 class MaterialUse(Part):

@@ -9,11 +9,12 @@ from dataclasses import replace
 import numpy as np
 
 from tegdesign.design.caution import cautions
+from tegdesign.design.condition import OPEN, SHORT, Condition
 from tegdesign.design.design import Design, as_design
 from tegdesign.design.evaluate import Candidates, Evaluation, Job
 from tegdesign.design.parts import Losses
-from tegdesign.design.rating import Ceiling, Check, DataUse, Loss, Mass, Rating, Sanity, State
-from tegdesign.design.state import OPEN, SHORT, Ask, solve, state_of
+from tegdesign.design.rating import Ceiling, Check, Conduction, DataUse, Loss, Mass, Rating, Sanity, State
+from tegdesign.design.state import Ask, solve, state_of
 from tegdesign.errors import DataRangeError
 from tegdesign.leg.closed_form import Couple, best_efficiency, power_ceiling
 from tegdesign.material.material import Material
@@ -22,6 +23,7 @@ from tegdesign.system.load import BestEfficiency, Matched
 from tegdesign.system.operating_point import OperatingPoint
 
 _SWITCHED = tuple(Losses.model_fields)
+_NODES = 24  # of the means over the temperatures of a leg
 
 
 def rate(design: Design | str | os.PathLike[str], *, refuse_outside_data: bool = True) -> Rating:
@@ -38,9 +40,9 @@ def rate(design: Design | str | os.PathLike[str], *, refuse_outside_data: bool =
         A state has no operating point.
     """
     design = as_design(design)
+    conditions = design.conditions
     asks = [
-        Ask("rated", design.source, design.sink, design.load, design.losses),
-        Ask("open circuit", design.source, design.sink, OPEN, design.losses),
+        *(Ask.of(condition, design.losses) for condition in conditions),
         Ask("most power", design.source, design.sink, Matched(), design.losses),
         Ask("best efficiency", design.source, design.sink, BestEfficiency(), design.losses),
         Ask("short circuit", design.source, design.sink, SHORT, design.losses, required=False),
@@ -58,9 +60,12 @@ def rate(design: Design | str | os.PathLike[str], *, refuse_outside_data: bool =
         for name in without
     ]
     base = len(asks) - len(without)
-    inlet = design.source.inlet_end()
-    if inlet is not None:
-        asks.append(Ask("open circuit, inlet end", inlet, design.sink, OPEN, design.losses, required=False))
+    end = len(asks)
+    asks += [
+        Ask(c.name, inlet, c.sink, OPEN, design.losses, required=False)
+        for c in conditions
+        if c.load is OPEN and (inlet := c.source.inlet_end()) is not None
+    ]
     modules, point = solve(design, asks)
     states, notes = [], []
     for k, ask in enumerate(asks[:base]):
@@ -69,7 +74,8 @@ def rate(design: Design | str | os.PathLike[str], *, refuse_outside_data: bool =
         else:
             notes.append(f"{ask.name}: no steady state with temperature falling all along the legs; left out")
     pair = (modules.materials[0], modules.materials[1])
-    evaluation = _as_evaluation(design, pair, point)
+    evaluation = _as_evaluation(design, conditions, pair, point)
+    notes += _deliver(states, evaluation)
     checks = tuple(_checks(evaluation))
     if refuse_outside_data:
         insist_on_data(checks, pair, design.materials.hold_outside_data)
@@ -86,22 +92,38 @@ def rate(design: Design | str | os.PathLike[str], *, refuse_outside_data: bool =
         masses=tuple(_masses(design, pair)),
         cautions=(),
         notes=tuple(notes),
-        inlet_end=(
-            state_of(design, asks[-1], modules, point, len(asks) - 1)
-            if inlet is not None and point.converged[-1]
-            else None
+        evaluation=evaluation,
+        conduction=tuple(_conduction(pair, rated)),
+        inlet_ends=tuple(
+            state_of(design, asks[k], modules, point, k) for k in range(end, len(asks)) if point.converged[k]
         ),
     )
     return replace(bare, cautions=cautions(bare))
 
 
 
-def _as_evaluation(design: Design, pair: tuple[Material, Material], point: OperatingPoint) -> Evaluation:
+def _deliver(states: list[State], e: Evaluation) -> Iterator[str]:
+    """Set what reaches the user in the loaded states (in place); yield what is to be said of it."""
+    for k, condition in enumerate(e.job.states):
+        if condition.of:
+            continue
+        before = e.points.get(condition.start) or e.points.get(condition.opened) or e.points[condition.name]
+        start = float(before.voltage[0] * e.candidates.series[0])
+        delivery = condition.load.delivery(states[k].voltage_V, states[k].current_A, start)
+        states[k] = replace(states[k], delivered_power_W=float(delivery.power))
+        if not delivery.started:
+            yield f"{condition.name}: the load does not start at {start:.4g} V; what holds is its open circuit or start"
+        if delivery.outside_table:
+            yield f"{condition.name}: input power outside the efficiency table of the load; the end value is held"
+
+
+def _as_evaluation(
+    design: Design, conditions: tuple[Condition, ...], pair: tuple[Material, Material], point: OperatingPoint
+) -> Evaluation:
     """Return the design as a batch of one, so that its limits are those of the sizing."""
     g = design.module
     job = Job(
-        design.source, design.sink, design.load, design.stack, design.losses, design.require, design.aim,
-        design.materials.hold_outside_data, pair,
+        conditions, design.stack, design.losses, design.require, design.aim, design.materials.hold_outside_data, pair,
     )  # fmt: skip
     numbers = (
         g.leg_length, g.leg_side_n, g.leg_side_p, g.pitch, g.couples, g.width * g.depth, g.modules_in_series,
@@ -110,7 +132,7 @@ def _as_evaluation(design: Design, pair: tuple[Material, Material], point: Opera
     geometry = Candidates(
         np.zeros(1, dtype=np.intp), np.ones(1, dtype=np.intp), *(np.full(1, float(v)) for v in numbers)
     )
-    return Evaluation(job, geometry, point.take([0]), point.take([1]))
+    return Evaluation(job, geometry, {state.name: point.take([k]) for k, state in enumerate(job.states)})
 
 
 def _checks(evaluation: Evaluation) -> Iterator[Check]:
@@ -156,6 +178,18 @@ def _data(states: Sequence[State], pair: tuple[Material, Material]) -> Iterator[
         for leg, m in zip("np", pair, strict=True):
             below, above = m.outside(state.T_cold_junction_K, state.T_hot_junction_K)
             yield DataUse(leg, m.name, state.name, *m.range, float(below), float(above))
+
+
+def _conduction(pair: tuple[Material, Material], rated: State) -> Iterator[Conduction]:
+    """Yield the mean thermal conductivity of each leg over its temperatures, and what carriers and lattice have in it."""
+    cold, hot = rated.T_cold_junction_K, rated.T_hot_junction_K
+    x, w = np.polynomial.legendre.leggauss(_NODES)
+    t = (hot + cold) / 2 + x * (hot - cold) / 2
+    for leg, m in zip("np", pair, strict=True):
+        whole, carriers = (
+            float(w @ kappa(t)) / 2 for kappa in (m.thermal_conductivity, m.electronic_thermal_conductivity)
+        )
+        yield Conduction(leg, m.name, cold, hot, whole, carriers, whole - carriers, m.electronic_basis)
 
 
 def _losses(
@@ -238,7 +272,13 @@ def _ceiling(design: Design, modules: Modules, pair: tuple[Material, Material], 
     """
     g, first, (n, p) = design.module, modules.take([0]), pair
     footprint, count = np.array([g.width * g.depth]), np.array([float(g.modules)])
-    source, sink = design.source.law(footprint, count), design.sink.law(footprint, count)
+    source, sink = (
+        side.law(footprint, count).tangent(np.array([face]), np.array([heat / g.modules]))
+        for side, face, heat in (
+            (design.source, rated.T_hot_face_K, rated.heat_in_W),
+            (design.sink, rated.T_cold_face_K, -rated.heat_out_W),
+        )
+    )
     given, cold = design.source.given_heat, design.sink.reference_temperature
     if given is not None:
         hot = min(n.service_limit.value, p.service_limit.value)
@@ -254,7 +294,7 @@ def _ceiling(design: Design, modules: Modules, pair: tuple[Material, Material], 
         for side, law in (("hot", source), ("cold", sink))
     }
     external = float((parts["hot"] + parts["cold"])[0])
-    hot = design.source.reference_temperature
+    hot, cold = float(source.open_temperature[0]), float(sink.open_temperature[0])
     if external == 0:
         return Ceiling(None, None, "surfaces are held at the legs, so nothing outside them limits the power")
     # at the optimum the legs hold half of the difference; the rest falls outside, as the resistances go

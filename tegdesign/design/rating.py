@@ -3,14 +3,20 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import asdict, dataclass
-from typing import TYPE_CHECKING, Any
+from dataclasses import asdict, dataclass, field
+from functools import cached_property
+from typing import TYPE_CHECKING, Any, cast
 
+from tegdesign.design.condition import OPEN, RATED, Condition
 from tegdesign.design.design import Design
 from tegdesign.material.material import Material
 
 if TYPE_CHECKING:
     import pandas as pd
+
+    from tegdesign.design.evaluate import Evaluation
+    from tegdesign.design.margin_result import Margins
+    from tegdesign.material.bands.material import BandMaterial
 
 
 @dataclass(frozen=True)
@@ -24,11 +30,15 @@ class Rung:
 
 @dataclass(frozen=True)
 class State:
-    """The whole generator in one state. Voltage, current, power and heat are totals of all modules."""
+    """The whole generator in one state. Voltage, current, power and heat are totals of all modules.
+
+    ``power_W`` is at the leads, ``delivered_power_W`` what reaches the user behind a converter or battery.
+    """
 
     name: str
     conditions: str
     power_W: float
+    delivered_power_W: float
     voltage_V: float
     current_A: float
     load_resistance_ohm: float | None
@@ -171,6 +181,20 @@ class Mass:
 
 
 @dataclass(frozen=True)
+class Conduction:
+    """What conducts heat in a leg: means over its rated temperatures, and where the part of the carriers is from."""
+
+    leg: str
+    material: str
+    T_cold_K: float
+    T_hot_K: float
+    thermal_conductivity_W_per_m_K: float
+    electronic_thermal_conductivity_W_per_m_K: float
+    lattice_thermal_conductivity_W_per_m_K: float
+    basis: str
+
+
+@dataclass(frozen=True)
 class Rating:
     """A design in its states, with everything an engineer needs to judge it."""
 
@@ -185,11 +209,47 @@ class Rating:
     masses: tuple[Mass, ...]
     cautions: tuple[Caution, ...]
     notes: tuple[str, ...]
-    inlet_end: State | None = None  # open circuit of the module that meets a stream first
+    conduction: tuple[Conduction, ...]
+    evaluation: Evaluation = field(repr=False, compare=False)  # the asked states as they were solved
+    inlet_ends: tuple[State, ...] = ()  # each open circuit, of the module that meets a stream first
 
     def state(self, name: str) -> State:
         """Return a state by its name: ``rated``, ``most power``, ``best efficiency``, ``open circuit`` ..."""
         return next(s for s in self.states if s.name == name)
+
+    @cached_property
+    def conditions(self) -> tuple[Condition, ...]:
+        """Conditions of every state that is asked for: the rated one, the named ones, their open circuits and starts."""
+        return self.design.conditions
+
+    @property
+    def loaded(self) -> tuple[Condition, ...]:
+        """Conditions of the states that were named, after that of the rated one; without open circuits and starts."""
+        return tuple(c for c in self.conditions if not c.of)
+
+    def around(self, loaded: Condition) -> tuple[State, ...]:
+        """Return a loaded state with its open circuit and start, those there are."""
+        return tuple(self.state(c.name) for c in self.conditions if loaded.name in (c.name, c.of))
+
+    @property
+    def asked(self) -> tuple[State, ...]:
+        """The states that are asked for, without the optima and the short circuit that are always told."""
+        return tuple(self.state(c.name) for c in self.conditions)
+
+    @property
+    def nominal(self) -> tuple[State, ...]:
+        """The states between the nominal source and sink: all but the named ones with theirs."""
+        named = {c.name for c in self.conditions if RATED not in (c.name, c.of)}
+        return tuple(s for s in self.states if s.name not in named)
+
+    @property
+    def opened(self) -> tuple[Condition, ...]:
+        """Conditions of the states without current, that of the nominal case first."""
+        return tuple(c for c in self.conditions if c.load is OPEN)
+
+    def duration_s(self, condition: Condition) -> float | None:
+        """Return for how long a state lasts [s], also for its open circuit and start; None where it is continuous."""
+        return next((s.duration for s in self.design.states if s.name in (condition.name, condition.of)), None)
 
     def __contains__(self, name: object) -> bool:
         """Tell whether a state of this name was found."""
@@ -209,6 +269,13 @@ class Rating:
     def met(self) -> bool:
         """Whether every limit and requirement holds."""
         return not self.failed
+
+    @cached_property
+    def margins(self) -> Margins:
+        """How far the design is from failing; found when it is first asked for."""
+        from tegdesign.design.margin import margins
+
+        return margins(self.evaluation)
 
     @property
     def held(self) -> tuple[DataUse, ...]:
@@ -260,14 +327,16 @@ class Rating:
                 "fill_factor": g.fill_factor,
             },
             "states": [asdict(s) for s in self.states],
-            "inlet_end_open_circuit": asdict(self.inlet_end) if self.inlet_end else None,
+            "inlet_ends": [asdict(s) for s in self.inlet_ends],
             "checks": [{**asdict(c), "margin": c.margin} for c in self.checks],
+            **self.margins.to_dict(),
             "data_range": [asdict(d) for d in self.data],
             "losses": [asdict(item) for item in self.losses],
             "ceiling": asdict(self.ceiling),
             "sanity": asdict(self.sanity),
             "leg_material": [asdict(m) for m in self.masses],
             "materials": [dict(_material(m)) for m in self.materials],
+            "conduction": [asdict(c) for c in self.conduction],
             "cautions": [asdict(c) for c in self.cautions],
             "assumptions": list(self.assumptions),
             "notes": list(self.notes),
@@ -280,3 +349,8 @@ def _material(m: Material) -> Iterator[tuple[str, Any]]:
     yield from (("T_first_K", first), ("T_last_K", last), ("service_limit_K", m.service_limit.value))
     yield from (("service_limit_basis", m.service_limit.basis), ("source", m.source), ("doi", m.doi))
     yield from (("compilation", m.compilation), ("hazards", m.hazards), ("hazard_tags", list(m.hazard_tags)))
+    yield ("kind", m.kind)
+    if m.kind == "bands":  # asked without loading what tables do not need
+        made = cast("BandMaterial", m)
+        yield from (("doping_per_m3", made.doping.cold), ("doping_hot_per_m3", made.doping.hot))
+        yield from (("graded_between_K", made.doping.span), ("grain_size_m", made.grain_size))

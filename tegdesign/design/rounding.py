@@ -2,143 +2,143 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator
-from dataclasses import dataclass, fields
+from dataclasses import dataclass
 from itertools import product
 
 import numpy as np
+from numpy.typing import NDArray
 
 from tegdesign.design.brief import Brief
-from tegdesign.design.evaluate import Candidates, Evaluation, Job, evaluate
-from tegdesign.design.search import Space, score
+from tegdesign.design.evaluate import Candidates, evaluate
+from tegdesign.design.search import Found, on_grids
+from tegdesign.design.space import Space, score
 from tegdesign.errors import InputError
 from tegdesign.material.curve import Array
 
-_GRIDS = 20  # grids tried for each free answer
-_FINALISTS = 5  # of them that are improved step by step
-_SHARES = (1.0, 0.8)  # of the widest legs that the pitch leaves room for
-_LENGTHS = (0.75, 1.0, 1.3)  # times the length that keeps the thermal resistance of the legs
-
-Row = tuple[float, float, float, int, int]  # leg length, side of n, side of p, columns, rows
+_GRIDS = 12  # grids tried
+_FINALISTS = 4  # of them that are rounded
+_ROUNDS = 8  # at most, of steps to neighbours
+_GAIN = 1e-4  # of a round, of the logarithm of the aim; less ends the steps
+_EXACT = 12  # geometries that are told apart by an exact evaluation in the end
 
 
 @dataclass(frozen=True)
 class Built:
-    """Buildable geometries with their grids."""
+    """Buildable geometries with their grids, and the place in an earlier batch that each comes from."""
 
     candidates: Candidates
     columns: Array
     rows: Array
+    parent: NDArray[np.intp]
 
-    def take(self, which: Array) -> Built:
+    def take(self, which: NDArray[np.intp]) -> Built:
         """Return the geometries ``which``."""
-        return Built(self.candidates.take(which), self.columns[which], self.rows[which])
-
-    def row(self, k: int) -> Row:
-        """Return the free numbers of one geometry."""
-        c = self.candidates
-        return (
-            float(c.leg_length[k]), float(c.side_n[k]), float(c.side_p[k]), int(self.columns[k]), int(self.rows[k]),
-        )  # fmt: skip
+        return Built(self.candidates.take(which), self.columns[which], self.rows[which], self.parent[which])
 
 
-def build(brief: Brief, job: Job, space: Space, free: Evaluation) -> Built:
-    """Return the best buildable geometry near the free answers of one or several problems.
+def build(brief: Brief, found: Found) -> Built:
+    """Return the best buildable geometry near the answers of a search.
 
-    Many even grids are tried, each with legs that keep the thermal resistance of the free answer; the best few are
-    then improved by whole workshop steps until no neighbour is better.
+    On many even grids the best legs are sought anew; the best few are then rounded to whole workshop steps, and
+    improved by such steps until no neighbour is better.
 
     Raises
     ------
     InputError
         No geometry of whole steps keeps the limits.
     """
-    scores = score(brief, free)
-    worth = np.flatnonzero(scores >= scores.max() - 0.05) if scores.max() > -1e3 else np.array([int(np.argmax(scores))])
-    tried = _join([_assemble(brief, space, free.candidates.take(worth[[k]]), _first(brief, space, free, int(worth[k])))
-                   for k in range(worth.size)])  # fmt: skip
-    if not tried.columns.size:
-        raise InputError(
-            "no design with whole workshop steps fits the limits; allow finer steps in [workshop] or wider limits for "
-            "leg_side, leg_length, gap or footprint"
-        )
-    values = score(brief, evaluate(job, tried.candidates))
-    best = [tried.take(np.array([k])) for k in _different(tried, values)]
-    top = max(values)
-    for reach in (1, 1, 2, 2, 2, 2, 2, 2):
-        around = _join([_assemble(brief, space, b.candidates, _steps(brief, b.row(0), reach)) for b in best])
-        values = score(brief, evaluate(job, around.candidates))
-        if reach == 2 and max(values) <= top + 1e-9:
+    job = found.space.job
+    parent, grid = _grids(brief, found)
+    if not parent.size:
+        raise _impossible()
+    found = on_grids(brief, found, parent, grid)
+    best = np.argsort(-found.scores, kind="stable")[:_FINALISTS]
+    place = found.space.grid[best]
+    tried = Built(found.space.candidates(best, found.u[best]), place[:, 0], place[:, 1], best)
+    guess, top = found.guess.take(best), -np.inf
+    which = np.arange(best.size)
+    for number in range(_ROUNDS):
+        near = _assemble(brief, found.space, tried, _steps(brief, tried, which, 2 if number else 1))
+        if not near.columns.size:
+            raise _impossible()
+        e = evaluate(job, near.candidates, rough=True, guess=guess.take(near.parent))
+        tried, guess, values = near, e.guess, score(brief, e)
+        if values.max() <= top + _GAIN:
             break
-        top = max(values)
-        best = [around.take(np.array([k])) for k in _different(around, values)[: _FINALISTS if reach == 1 else 1]]
-    return best[0]
+        top, which = values.max(), _different(tried, values, 1 if number else 2)
+    best = np.argsort(-values, kind="stable")[:_EXACT]
+    tried = tried.take(best)
+    values = score(brief, evaluate(job, tried.candidates, guess=guess.take(best)))
+    return tried.take(np.array([np.argmax(values)]))
 
 
-def _first(brief: Brief, space: Space, free: Evaluation, k: int) -> Iterator[Row]:
-    """Yield grids near a free answer, with leg sides scaled to their pitch and lengths round the one that fits."""
-    limits, step = brief.limits, brief.workshop.leg_side_step
-    c = free.candidates
-    couples, sides = float(c.couples[k]), (float(c.side_n[k]), float(c.side_p[k]))
-    own = (sides[0] + sides[1]) / 2 / max(float(c.pitch[k]) - limits.gap, 1e-9)
-    area = couples * (sides[0] ** 2 + sides[1] ** 2)
-    least, most_steps = np.ceil(limits.leg_side[0] / step - 1e-6), np.floor(limits.leg_side[1] / step + 1e-6)
+def _impossible() -> InputError:
+    return InputError(
+        "no design with whole workshop steps fits the limits; allow finer steps in [workshop] or wider limits for "
+        "leg_side, leg_length, gap or footprint"
+    )
+
+
+def _grids(brief: Brief, found: Found) -> tuple[NDArray[np.intp], Array]:
+    """Return even grids near the answers of a search, best first: numbers of the answers and (columns, rows)."""
+    limits, space, scores = brief.limits, found.space, found.scores
+    near = scores >= scores.max() - 0.05 if scores.max() > -1e3 else np.arange(scores.size) == np.argmax(scores)
     cell = limits.leg_side[0] + limits.gap
-    grids: list[tuple[float, int, int, float]] = []
-    for columns in range(1, int(space.width / cell + 1e-9) + 1):
-        for rows in range(1, int(space.depth / cell + 1e-9) + 1):
-            made = columns * rows / 2
-            if columns * rows % 2 or not limits.couples[0] <= made <= limits.couples[1]:
-                continue
-            most = min(space.width / columns, space.depth / rows)
-            used = most**2 * columns * rows / (space.width * space.depth)
-            grids.append((0.25 * abs(np.log(made / couples)) - np.log(used), columns, rows, most))
-    for _, columns, rows, most in sorted(grids)[:_GRIDS]:
-        for share, towards in product((*_SHARES, own), (1.0, 0.4)):  # sides apart as they were, or less
-            mean, root = share * (most - limits.gap), (sides[0] / sides[1]) ** towards
-            ideal = (2 * mean * root / (1 + root), 2 * mean / (1 + root))
-            sn, sp = (float(np.clip(np.floor(s / step + 1e-6), least, most_steps)) * step for s in ideal)
-            for factor in _LENGTHS:
-                fit = float(c.leg_length[k]) * columns * rows / 2 * (sn**2 + sp**2) / area
-                length = float(np.clip(fit * factor, *limits.leg_length))
-                yield _whole(length, brief.workshop.leg_length_step), sn, sp, columns, rows
+    most = [int(room / cell + 1e-9) for room in (space.width, space.depth)]
+    columns, rows = (v.ravel() for v in np.meshgrid(*(np.arange(1.0, m + 1) for m in most), indexing="ij"))
+    made = columns * rows / 2
+    fits = (made % 1 == 0) & (limits.couples[0] <= made) & (made <= limits.couples[1])
+    pitch = np.minimum(space.width / columns, space.depth / rows)
+    alike = np.where(fits, np.round(made * 1e6) + pitch, -1.0)  # grids turned by a right angle
+    _, first = np.unique(alike, return_index=True)
+    fits &= np.isin(np.arange(made.size), first)
+    columns, rows, made, pitch = columns[fits], rows[fits], made[fits], pitch[fits]
+    used = pitch**2 * 2 * made / (space.width * space.depth)
+    unlike = 0.25 * np.abs(np.log(made / space.couples_of(found.u[near])[:, None])) - np.log(used)
+    unlike += scores.max() - scores[near][:, None]
+    chosen = np.argsort(unlike.ravel(), kind="stable")[:_GRIDS]
+    k = chosen % max(made.size, 1)
+    return np.flatnonzero(near)[chosen // max(made.size, 1)], np.stack([columns[k], rows[k]], axis=1)
 
 
-def _steps(brief: Brief, row: Row, reach: int) -> Iterator[Row]:
-    """Yield the neighbours of a geometry by whole workshop steps, itself included."""
-    length, sn, sp, columns, rows = row
-    along, across = brief.workshop.leg_length_step, brief.workshop.leg_side_step
-    moves = range(-reach, reach + 1)
-    for a, b, c in product(moves, moves, moves):
-        yield length + a * along, sn + b * across, sp + c * across, columns, rows
+def _steps(brief: Brief, built: Built, which: NDArray[np.intp], reach: int) -> Array:
+    """Return rows of the neighbours by whole workshop steps, themselves included; leg length follows leg area.
+
+    A row is leg length, side of n, side of p, columns, rows, parent.
+    """
+    c, steps = built.candidates, brief.workshop
+    size = np.array([steps.leg_length_step, steps.leg_side_step, steps.leg_side_step])
+    moves = np.array(list(product(range(-reach, reach + 1), repeat=3)))
+    out = []
+    for k in which:
+        sides = np.round(np.array([c.side_n[k], c.side_p[k]]) / size[1:]) + moves[:, 1:]
+        sides = np.maximum(sides, 1) * size[1:]
+        length = c.leg_length[k] * (sides**2).sum(axis=1) / (c.side_n[k] ** 2 + c.side_p[k] ** 2)
+        length = np.maximum(np.round(length / size[0]) + moves[:, 0], 1) * size[0]
+        rest = np.tile([built.columns[k], built.rows[k], k], (len(moves), 1))
+        out.append(np.concatenate([length[:, None], sides, rest], axis=1))
+    return np.concatenate(out)
 
 
-def _whole(value: float, step: float) -> float:
-    return max(round(value / step), 1) * step
-
-
-def _different(built: Built, values: Array) -> list[int]:
-    """Return the best geometry of each of the best few grids and connections."""
-    found: dict[tuple[float, ...], int] = {}
+def _different(built: Built, values: Array, count: int) -> NDArray[np.intp]:
+    """Return the best geometry of each of the best ``count`` grids and connections."""
     c = built.candidates
-    for k in np.argsort(-values, kind="stable"):
-        grid = sorted((float(built.columns[k]), float(built.rows[k])))  # turned by a right angle is no other grid
-        key = (*grid, float(c.series[k]), float(c.parallel[k]))
-        found.setdefault(key, int(k))
-        if len(found) == _FINALISTS:
-            break
-    return list(found.values())
+    order = np.argsort(-values, kind="stable")
+    keys = np.stack([built.columns, built.rows, c.series, c.parallel], axis=1)[order]
+    _, first = np.unique(keys, axis=0, return_index=True)
+    return order[np.sort(first)[:count]]
 
 
-def _assemble(brief: Brief, space: Space, like: Candidates, rows: Iterable[Row]) -> Built:
-    """Return the geometries of these rows that keep the limits of the workshop.
+def _assemble(brief: Brief, space: Space, like: Built, table: Array) -> Built:
+    """Return the geometries of these rows that keep the limits of the workshop; the last number of a row is its parent.
 
     Each at the widest pitch of its grid, and also on the smallest plate where that is much smaller.
     """
     limits, step = brief.limits, brief.workshop.gap_step
-    length, sn, sp, columns, grid_rows = np.array(list(rows), dtype=float).reshape(-1, 5).T
+    length, sn, sp, columns, rows = table[:, :5].T
+    parent = table[:, 5].astype(np.intp)
     mean, thin, thick = (sn + sp) / 2, np.minimum(sn, sp), np.maximum(sn, sp)
-    most = np.minimum(space.width / columns, space.depth / grid_rows)
+    most = np.minimum(space.width / columns, space.depth / rows)
     widest = np.floor((most - mean) / step + 1e-6) * step
     closest = np.ceil(np.maximum(limits.gap, thick - mean + limits.corner) / step - 1e-6) * step
     fits = (limits.leg_side[0] - 1e-9 <= thin) & (thick <= limits.leg_side[1] + 1e-9)
@@ -147,23 +147,14 @@ def _assemble(brief: Brief, space: Space, like: Candidates, rows: Iterable[Row])
     smaller = fits & (mean + widest > 1.05 * (mean + closest))
     kept = np.concatenate([np.flatnonzero(fits), np.flatnonzero(smaller)])
     gap = np.concatenate([widest[fits], closest[smaller]])
-    length_, sn_, sp_, pitch = (_tidied(v) for v in (length[kept], sn[kept], sp[kept], mean[kept] + gap))
-    columns_, rows_ = columns[kept], grid_rows[kept]
-    edge, count = 2 * limits.edge_margin, kept.size
+    length, sn, sp, pitch = (_tidied(v) for v in (length[kept], sn[kept], sp[kept], mean[kept] + gap))
+    columns, rows, parent = columns[kept], rows[kept], parent[kept]
+    edge, own = 2 * limits.edge_margin, like.candidates.take(parent)
     candidates = Candidates(
-        np.repeat(like.n, count), np.repeat(like.p, count), length_, sn_, sp_, pitch, columns_ * rows_ / 2,
-        (columns_ * pitch + edge) * (rows_ * pitch + edge), np.repeat(like.series, count),
-        np.repeat(like.parallel, count),
+        own.n, own.p, length, sn, sp, pitch, columns * rows / 2, (columns * pitch + edge) * (rows * pitch + edge),
+        own.series, own.parallel,
     )  # fmt: skip
-    return Built(candidates, columns_, rows_)
-
-
-def _join(parts: list[Built]) -> Built:
-    names = [f.name for f in fields(Candidates)]
-    joined = {name: np.concatenate([getattr(p.candidates, name) for p in parts]) for name in names}
-    return Built(
-        Candidates(**joined), np.concatenate([p.columns for p in parts]), np.concatenate([p.rows for p in parts])
-    )
+    return Built(candidates, columns, rows, parent)
 
 
 def _tidied(values: Array) -> Array:

@@ -10,9 +10,10 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from tegdesign.design.condition import OPEN, SHORT
 from tegdesign.design.design import Design, as_design
 from tegdesign.design.rating import State
-from tegdesign.design.state import OPEN, SHORT, Ask, solve, solve_all, state_of
+from tegdesign.design.state import Ask, solve, solve_all, state_of
 from tegdesign.document import validate
 from tegdesign.errors import DataRangeError, InputError, closest
 from tegdesign.system.boundary import AnyBoundary
@@ -145,9 +146,9 @@ def against_hot(
     design = as_design(design)
     given = design.source.given_heat
     if given is not None:
-        heats = np.linspace(0.25, 1.0, points) * given
-        sources: list[AnyBoundary] = [design.source.model_copy(update={"heat": float(q)}) for q in heats]
-        name, unit, x = "source_heat", "W", [(float(q),) for q in heats]
+        shares = [float(share) for share in np.linspace(0.25, 1.0, points)]
+        sources: list[AnyBoundary] = [design.source.scaled(share) for share in shares]
+        name, unit, x = "source_heat", "W", [(share * given,) for share in shares]
     else:
         top, low = design.source.reference_temperature, design.sink.reference_temperature
         values = temperatures_K or [float(t) for t in np.linspace(low + 0.25 * (top - low), top, points)]

@@ -3,21 +3,24 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Callable, Iterator
-from dataclasses import asdict, dataclass
+from collections.abc import Callable, Iterator, Mapping
+from dataclasses import asdict, dataclass, replace
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-from tegdesign.design.assemble import material
+from tegdesign.design.assemble import made_of, material
 from tegdesign.design.brief import Brief, as_brief
+from tegdesign.design.deciding import deciding, missed, only
 from tegdesign.design.design import Chosen, Design, Geometry, defaults
 from tegdesign.design.evaluate import Job, evaluate
+from tegdesign.design.parts import Made
 from tegdesign.design.rate import rate
 from tegdesign.design.rating import Check, Rating
 from tegdesign.design.rounding import Built, build
-from tegdesign.design.search import Problems, search
+from tegdesign.design.search import refine, search
+from tegdesign.design.space import Problems
 from tegdesign.errors import ConvergenceError, InputError
 from tegdesign.material.curve import Array
 from tegdesign.quantity import write
@@ -25,12 +28,17 @@ from tegdesign.quantity import write
 if TYPE_CHECKING:
     import pandas as pd
 
+    from tegdesign.design.making import Making
+
 UNIT_OF_AIM = {
     "power": "power_W",
     "efficiency": "efficiency",
     "power per footprint": "power_per_footprint_W_per_m2",
     "power per material mass": "power_per_material_mass_W_per_kg",
 }
+
+AFTER_MAKING = 0.1  # of the box of the search: widest step once the materials are made
+_WAYS = 6  # connections of modules that are looked into
 
 
 @dataclass(frozen=True)
@@ -44,7 +52,10 @@ class Binding:
 
 @dataclass(frozen=True)
 class Sizing:
-    """The answer to a brief: the design, its rating, what binds, and what rounding to workshop steps cost."""
+    """The answer to a brief: the design, its rating, what binds, what rounding to workshop steps cost.
+
+    ``making`` tells how materials were made for the brief, None where all was given.
+    """
 
     brief: Brief
     design: Design
@@ -52,6 +63,7 @@ class Sizing:
     binding: tuple[Binding, ...]
     objective_before_rounding: float
     objective: float
+    making: Making | None = None
 
     @property
     def met(self) -> bool:
@@ -83,6 +95,7 @@ class Sizing:
             f"aimed_{unit}": self.objective,
             f"aimed_before_rounding_{unit}": self.objective_before_rounding,
             "binding": [asdict(b) for b in self.binding],
+            "making": None if self.making is None else self.making.to_dict(),
             "assumed_limits": self.assumed_limits,
             "failed": [{**asdict(c), "margin": c.margin} for c in self.failed],
             "rating": self.rating.to_dict(),
@@ -106,11 +119,10 @@ def size(brief: Brief | str | os.PathLike[str], *, progress: Callable[[float], N
         No candidate has an operating point.
     """
     brief = as_brief(brief)
-    names = [_single(brief, side) for side in ("n", "p")]
-    pair = [
-        material(name, side, brief.materials.folder) for name, side in zip(names, ("n", "p"), strict=True)
-    ]
-    job = job_of(brief, pair)
+    names = {side: _single(brief, side) for side in ("n", "p")}
+    use = brief.materials
+    pair = [material(name, side, use.folder, use.making(side).given) for side, name in names.items()]
+    whole = job_of(brief, pair)
     ways = list(connections(brief))
     count = len(ways)
     problems = Problems(
@@ -119,30 +131,47 @@ def size(brief: Brief | str | os.PathLike[str], *, progress: Callable[[float], N
         np.array([c[0] for c in ways], dtype=float),
         np.array([c[1] for c in ways], dtype=float),
     )
+    states = deciding(brief, whole, problems)
+    making: Making | None = None
+    while True:  # until no state that was left aside is missed
+        found = search(brief, only(whole, states), problems, _one_of_each_series, True, progress)
+        if not np.any(np.isfinite(found.scores)):
+            raise ConvergenceError(
+                "no candidate of this brief has an operating point; widen limits.leg_length or check source and sink"
+            )
+        if use.making("n").free or use.making("p").free:
+            from tegdesign.design.making import make
 
-    def three_best(scores: Array) -> NDArray[np.intp]:
-        return np.argsort(-scores, kind="stable")[:3]
-
-    problems, space, u, scores = search(brief, job, problems, three_best, progress)
-    if not np.any(np.isfinite(scores)):
-        raise ConvergenceError(
-            "no candidate of this brief has an operating point; widen limits.leg_length or check source and sink"
-        )
-    free = evaluate(job, space.candidates(np.arange(scores.size), u))
-    built = build(brief, job, space, free)
-    k = int(np.argmax(scores))
-    design = _design(brief, names[0], names[1], built)
+            making = make(brief, only(whole, states), found, int(np.argmax(found.scores)))
+            whole = replace(whole, materials=[made_of(m, making.made[m.polarity], m.polarity) for m in pair])
+            found = refine(brief, only(whole, states), found.problems, found.u, found.guess, AFTER_MAKING)
+        built = build(brief, found)
+        forgotten = missed(whole, built.candidates) - states
+        if not forgotten:
+            break
+        states |= forgotten
+    ends = found.space.candidates(np.arange(found.scores.size), found.u)
+    free = evaluate(only(whole, states), ends, guess=found.guess)
+    design = _design(brief, names, None if making is None else making.made, built)
     rating = rate(design)
     exact = float(_objective(brief, rating))
     return Sizing(
-        brief, design, rating, tuple(_binding(brief, design, rating)), float(free.objective[k]), exact
-    )
+        brief, design, rating, tuple(_binding(brief, design, rating)), float(free.objective[np.argmax(found.scores)]),
+        exact, making,
+    )  # fmt: skip
+
+
+def _one_of_each_series(problems: Problems, scores: Array) -> NDArray[np.intp]:
+    """Return the best connections, one for a number of modules in series."""
+    order = np.argsort(-scores, kind="stable")
+    _, first = np.unique(problems.series[order], return_index=True)
+    return order[np.sort(first)[:_WAYS]]
 
 
 def job_of(brief: Brief, materials: list[Any]) -> Job:
     """Return what all candidates of a brief share."""
     return Job(
-        brief.source, brief.sink, brief.load, brief.stack, brief.losses, brief.require, brief.aim,
+        brief.conditions, brief.stack, brief.losses, brief.require, brief.aim,
         brief.materials.hold_outside_data, materials,
     )  # fmt: skip
 
@@ -171,7 +200,7 @@ def connections(brief: Brief) -> Iterator[tuple[int, int]]:
             yield series, count // series
 
 
-def _design(brief: Brief, n: str, p: str, built: Built) -> Design:
+def _design(brief: Brief, names: dict[str, str], made: Mapping[str, Made] | None, built: Built) -> Design:
     c, limits = built.candidates, brief.limits
     geometry = Geometry.model_construct(
         columns=int(built.columns[0]),
@@ -186,11 +215,14 @@ def _design(brief: Brief, n: str, p: str, built: Built) -> Design:
     )
     shared = {
         name: getattr(brief, name)
-        for name in ("title", "revision", "aim", "source", "sink", "load", "require")
+        for name in ("title", "revision", "aim", "source", "sink", "load", "require", "states")
     }
     use = brief.materials
-    chosen = Chosen.model_construct(n=n, p=p, hold_outside_data=use.hold_outside_data, folder=use.folder)
-    made = Design.model_construct(
+    makes = {f"make_{side}": (made or {}).get(side) or use.making(side).given for side in names}
+    values: dict[str, Any] = {key: None if make.as_filed else make for key, make in makes.items()}
+    values |= {**names, "hold_outside_data": use.hold_outside_data, "folder": use.folder}
+    chosen = Chosen.model_construct(**values)
+    bare = Design.model_construct(
         **shared,
         materials=chosen,
         module=geometry,
@@ -198,7 +230,7 @@ def _design(brief: Brief, n: str, p: str, built: Built) -> Design:
         losses=brief.losses,
         assumed=_assumed(brief),
     )
-    return Design.model_validate(made.model_dump(exclude_none=True))
+    return Design.model_validate(bare.model_dump(exclude_none=True))
 
 
 def _assumed(brief: Brief) -> tuple[str, ...]:
@@ -207,7 +239,7 @@ def _assumed(brief: Brief) -> tuple[str, ...]:
 
 
 def _objective(brief: Brief, rating: Rating) -> float:
-    power = rating.rated.power_W
+    power = rating.rated.delivered_power_W
     g = rating.design.module
     return {
         "power": power,

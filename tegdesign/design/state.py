@@ -4,10 +4,12 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 
 from tegdesign.design.assemble import modules_of
+from tegdesign.design.condition import Condition
 from tegdesign.design.design import Design
 from tegdesign.design.parts import Losses
 from tegdesign.design.rating import Rung, State
@@ -15,23 +17,25 @@ from tegdesign.errors import ConvergenceError
 from tegdesign.module.module import Modules
 from tegdesign.system.boundary import AnyBoundary
 from tegdesign.system.law import join
-from tegdesign.system.load import AnyLoad, GivenCurrent, Resistance, mixed
+from tegdesign.system.load import AnyLoad, Resistance, mixed
 from tegdesign.system.operating_point import OperatingPoint, operating_point
-
-OPEN = GivenCurrent.model_construct(current=0.0)
-SHORT = Resistance.model_construct(resistance=0.0)
 
 
 @dataclass(frozen=True)
 class Ask:
-    """One state to be solved: a name, the boundaries, the load, the loss switches."""
+    """One state to be solved, with the loss switches."""
 
     name: str
     source: AnyBoundary
     sink: AnyBoundary
-    load: AnyLoad
+    load: Any  # AnyLoad or Starting
     losses: Losses
     required: bool = True  # raise if it is not found; otherwise leave it out with a note
+
+    @classmethod
+    def of(cls, condition: Condition, losses: Losses) -> Ask:
+        """Return a required state of these conditions."""
+        return cls(condition.name, condition.source, condition.sink, condition.load, losses)
 
 
 def solve(design: Design, asks: Sequence[Ask]) -> tuple[Modules, OperatingPoint]:
@@ -94,6 +98,7 @@ def state_of(design: Design, ask: Ask, modules: Modules, point: OperatingPoint, 
         name=ask.name,
         conditions=f"{ask.load.words()}; source {ask.source.words()}; sink {ask.sink.words()}; steady",
         power_W=voltage * current,
+        delivered_power_W=voltage * current,
         voltage_V=voltage,
         current_A=current,
         load_resistance_ohm=_load_resistance(ask.load, voltage, current),
@@ -132,8 +137,8 @@ def _ladder(ask: Ask, m: Modules, point: OperatingPoint, k: int, count: int) -> 
     """Yield places from the source to the sink with the fall of temperature before each."""
     places: list[tuple[str, float]] = []
     heat_in, heat_out = float(point.heat_in[k]), float(point.heat_out[k])
-    face = np.array([point.hot_face[k]])
-    for place, value in ask.source.stations(face, np.array([heat_in * count])):
+    face, area = np.array([point.hot_face[k]]), np.asarray(m.footprint) * count
+    for place, value in ask.source.stations(face, np.array([heat_in * count]), area):
         places.append((f"source {place}", float(value[0])))
     t = float(point.hot_face[k])
     places.append(("hot face", t))
@@ -147,7 +152,7 @@ def _ladder(ask: Ask, m: Modules, point: OperatingPoint, k: int, count: int) -> 
         t -= heat_out * float(resistance[0])
         places.append(("cold face" if name == "interface" else f"behind cold {name}", t))
     for place, value in reversed(
-        ask.sink.stations(np.array([point.cold_face[k]]), np.array([-heat_out * count]))
+        ask.sink.stations(np.array([point.cold_face[k]]), np.array([-heat_out * count]), area)
     ):
         places.append((f"sink {place}", float(value[0])))
     previous = places[0][1]

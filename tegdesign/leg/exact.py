@@ -98,6 +98,8 @@ def solve_leg(
         in power, 4 about 1e-8; a table that turns sharply costs up to two digits.
     tolerance : float
         Estimated error left by the iteration, relative to the conducted heat.
+    max_iterations : int
+        No more than 8 spare the second try, on finer panels, that legs of very strong current need.
     slopes : bool
         Also return exact derivatives.
     check : bool
@@ -222,7 +224,7 @@ def _solve_chunk(
 ) -> LegSolution:
     """Solve legs (B,) in one go, those of very strong current a second time on nodes of their own."""
     first = _solve_on(shared_nodes(panels, lower, upper), j, tolerance, min(_QUICK, max_iterations), slopes)
-    if first.converged.all():
+    if max_iterations <= _QUICK or first.converged.all():
         return first
     hard = ~first.converged
     nodes = own_nodes(prepare(material, _FINE), lower[hard], upper[hard])

@@ -61,7 +61,7 @@ def solve_nodes(nodes: Nodes, j: Array, tolerance: float, max_iterations: int, s
     twice = 2 * j * j
     coupling = product * drift
     coupling *= twice
-    joule = cumulative @ product
+    joule = cumulative.running(product)
     joule *= -twice
     # start: G^2 to first order in j, scaled so that kappa / G integrates to 1
     g = drift * (2 * conducted)
@@ -74,7 +74,7 @@ def solve_nodes(nodes: Nodes, j: Array, tolerance: float, max_iterations: int, s
     u /= scale
     g *= scale
     v = coupling * u
-    rest = cumulative @ v
+    rest = cumulative.running(v)
     rest += joule
     np.subtract(g, drift, out=v)
     v *= v
@@ -107,12 +107,12 @@ def solve_nodes(nodes: Nodes, j: Array, tolerance: float, max_iterations: int, s
         before, last = np.maximum(change, 1e-300), end
         np.multiply(coupling, u, out=v)
         if strong:  # half way, or it may swing
-            rest = (rest + joule + cumulative @ v) / 2
+            rest = (rest + joule + cumulative.running(v)) / 2
         else:
-            np.matmul(cumulative, v, out=rest)
+            cumulative.running(v, out=rest)
             rest += joule
     np.multiply(product, u, out=v)
-    resistance = cumulative[-1] @ v
+    resistance = cumulative.whole(v)
     at_cold, at_hot = np.sqrt(constant), np.sqrt(constant + rest[-1])
     misfit = np.abs(at_cold - j * j * resistance - at_hot) / conducted
     sound = settled & (u.min(axis=0) > 0)
@@ -126,18 +126,18 @@ def slopes_of(nodes: Nodes, j: Array, state: State, at_hot: Array, at_cold: Arra
     p = j^2 rho kappa / G^2, mu = exp(integral p).
     """
     cold, hot = nodes.cold, nodes.hot
-    cumulative, total = nodes.cumulative[:-1], nodes.cumulative[-1]
+    cumulative = nodes.cumulative
     u = state.inverse
     weight = nodes.product * u
-    source = cumulative @ weight
+    source = cumulative.running(weight)[:-1]
     source *= -2 * j
     source += nodes.thomson - cold.voltage  # derivative of the right-hand side by j
     weight *= u
     kernel = weight * (j * j)
-    growth = np.exp(cumulative @ kernel)
+    growth = np.exp(cumulative.running(kernel)[:-1])
     kernel /= growth
     kernel *= source
-    by_current = cumulative @ kernel
+    by_current = cumulative.running(kernel)[:-1]
     by_current *= growth
     by_current += source
     pull = nodes.conductivity * u
@@ -146,7 +146,7 @@ def slopes_of(nodes: Nodes, j: Array, state: State, at_hot: Array, at_cold: Arra
     m_current = np.einsum("nb,nb->b", pull, by_current)
     growth *= weight
     by_current *= weight
-    r_flow, r_current = total @ growth, total @ by_current
+    r_flow, r_current = cumulative.whole(growth), cumulative.whole(by_current)
     k_h, k_c = hot.conductivity / at_hot, cold.conductivity / at_cold
     moved = -j * cold.seebeck + j * j * cold.resistivity * k_c
     flow = Slopes(k_h / m_flow, -k_c / m_flow - moved, -m_current / m_flow)

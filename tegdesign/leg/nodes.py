@@ -10,6 +10,7 @@ import numpy as np
 from tegdesign.leg.panels import Panels, gauss_rule
 from tegdesign.material.curve import Array, horner
 
+_DENSE = 200_000  # products of a matrix up to here; beyond, panels one by one are quicker and keep to one core
 _PIECES, _RATIO = 8, 4.0  # ``own_nodes``: pieces towards the hot end, each that many times smaller than the last
 
 
@@ -28,30 +29,55 @@ class End(NamedTuple):
         return self.thomson + self.seebeck * self.temperature
 
 
+class Integration(NamedTuple):
+    """Integrals from the cold end of arrays (nodes, B) such as ``product``, on equal numbers of nodes in each panel."""
+
+    matrix: Array  # (nodes + 1, nodes): to every node and, in the last row, to the hot end
+    to_node: Array  # (points, points): to every node of one panel
+    weight: Array  # (points,): over one panel
+
+    def running(self, values: Array, out: Array | None = None) -> Array:
+        """Return the integrals to every node and to the hot end, (nodes + 1, B)."""
+        nodes, size = values.shape
+        if self.matrix.size * size < _DENSE:
+            return np.matmul(self.matrix, values, out=out)
+        out = np.empty((nodes + 1, size)) if out is None else out
+        panels = values.reshape(-1, self.weight.size, size)
+        inside = out[:-1].reshape(panels.shape)
+        np.matmul(self.to_node, panels, out=inside)
+        whole = np.matmul(self.weight, panels).cumsum(axis=0)
+        inside[1:] += whole[:-1, None]
+        out[-1] = whole[-1]
+        return out
+
+    def whole(self, values: Array) -> Array:
+        """Return the integrals over the whole leg (B,)."""
+        return np.asarray(np.einsum("n,nb->b", self.matrix[-1], values))
+
+
 class Nodes(NamedTuple):
     """Node data of B legs, arrays (nodes, B).
 
     ``conductivity`` is kappa times panel width and Gauss weight, ``product`` rho kappa times width, ``thomson`` the
-    integral of S dT less S T; ``cumulative`` (nodes + 1, nodes) integrates arrays such as ``product`` from the cold
-    end to every node and, in its last row, to the hot end.
+    integral of S dT less S T; ``cumulative`` integrates such arrays from the cold end.
     """
 
     conductivity: Array
     product: Array
     thomson: Array
-    cumulative: Array
+    cumulative: Integration
     cold: End
     hot: End
 
 
 @lru_cache(maxsize=64)
-def integration(points: int, panels: int) -> Array:
-    """Return the matrix of integrals from the cold end to every node and over the whole leg."""
+def integration(points: int, panels: int) -> Integration:
+    """Return the integrals over legs of ``panels`` panels."""
     _, w, to_node = gauss_rule(points)
     before = np.tril(np.ones((panels + 1, panels)), -1)
     full = np.kron(np.repeat(before, points, axis=0)[: panels * points + 1], w)
     full[:-1] += np.kron(np.eye(panels), to_node)
-    return np.ascontiguousarray(full)
+    return Integration(np.ascontiguousarray(full), to_node, w)
 
 
 def shared_nodes(panels: Panels, lower: Array, upper: Array) -> Nodes:

@@ -81,6 +81,16 @@ class Material:
     path: str = ""
 
     @property
+    def kind(self) -> str:
+        """Kind of its file: ``table`` of measured points, ``bands`` when it is computed."""
+        return "table"
+
+    @property
+    def majority_doping(self) -> float | None:
+        """Carriers that the dopants give, at the cold end where graded [1/m^3]; None where not known."""
+        return None
+
+    @property
     def range(self) -> tuple[float, float]:
         """Temperatures between which all three properties are known [K]."""
         ranges = [c.range for c in (self.seebeck_coefficient, self.resistivity, self.thermal_conductivity)]

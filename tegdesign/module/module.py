@@ -87,9 +87,18 @@ class Modules:
         return int(self.n.size)
 
     def take(self, which: Any) -> Modules:
-        """Return the designs ``which`` (mask or indices) of the batch."""
-        values = {f.name: getattr(self, f.name) for f in fields(self) if f.name != "materials"}
-        return Modules(self.materials, **{name: v[which] if np.ndim(v) else v for name, v in values.items()})
+        """Return the designs ``which`` (mask or indices) of the batch, with all that is already worked out of them."""
+        values = {name: v[which] if np.ndim(v) else v for name, v in self.__dict__.items() if name != "materials"}
+        own = {f.name for f in fields(self)}
+        part = Modules(self.materials, **{name: v for name, v in values.items() if name in own})
+        part.__dict__.update(values)
+        return part
+
+    def tile(self, times: int) -> Modules:
+        """Return the batch repeated, what does not depend on temperature worked out once."""
+        for name in ("contacts", "electrode_paths", "resistance_hot", "resistance_cold", "gap_area", "leg_area"):
+            getattr(self, name)
+        return self.take(np.tile(np.arange(self.size), times))
 
     @cached_property
     def area_n(self) -> Array:
@@ -193,15 +202,28 @@ class Flows(NamedTuple):
     voltage_slopes: Slopes
 
 
-def _legs(modules: Modules, which: NDArray[np.intp], hot: Array, cold: Array, j: Array) -> LegSolution:
+class Accuracy(NamedTuple):
+    """How well legs are solved: arguments of ``solve_leg``."""
+
+    points: int = 4
+    tolerance: float = 1e-11
+    max_iterations: int = 60
+
+
+EXACT = Accuracy()
+
+
+def _legs(
+    modules: Modules, which: NDArray[np.intp], hot: Array, cold: Array, j: Array, accuracy: Accuracy
+) -> LegSolution:
     """Solve one leg of every module; loops over materials, never over designs."""
+    asked = {**accuracy._asdict(), "slopes": True, "check": False}
+    if (which == which[:1]).all() and which.size:
+        return solve_leg(modules.materials[which[0]], hot, cold, j, **asked)
     used = np.unique(which)
-    if used.size == 1:
-        return solve_leg(modules.materials[used[0]], hot, cold, j, slopes=True, check=False)
     masks = [which == k for k in used]
     parts = [
-        solve_leg(modules.materials[k], hot[m], cold[m], j[m], slopes=True, check=False)
-        for k, m in zip(used, masks, strict=True)
+        solve_leg(modules.materials[k], hot[m], cold[m], j[m], **asked) for k, m in zip(used, masks, strict=True)
     ]
 
     def join(values: list[Array]) -> Array:
@@ -220,7 +242,7 @@ def _legs(modules: Modules, which: NDArray[np.intp], hot: Array, cold: Array, j:
     return LegSolution(**merged)
 
 
-def flows(modules: Modules, hot: Array, cold: Array, current: Array) -> Flows:
+def flows(modules: Modules, hot: Array, cold: Array, current: Array, accuracy: Accuracy = EXACT) -> Flows:
     """Return heats, voltages and resistances of modules at junction temperatures [K] and module current [A].
 
     V = V_oc - I R_int with both taken on the temperature profile that the legs have at that current. Joule heat of
@@ -233,7 +255,7 @@ def flows(modules: Modules, hot: Array, cold: Array, current: Array) -> Flows:
     converged = np.ones(current.shape, dtype=bool)
     for which, area, sign in ((modules.n, modules.area_n, -1.0), (modules.p, modules.area_p, 1.0)):
         j = sign * current * length / area
-        leg = _legs(modules, which, hot, cold, j)
+        leg = _legs(modules, which, hot, cold, j, accuracy)
         if leg.cold_heat_slopes is None or leg.resistance_slopes is None:  # pragma: no cover - asked for above
             raise AssertionError
         scale = couples * area / length  # [m]

@@ -44,7 +44,12 @@ def comparison_report(result: Comparison, top: int = 20) -> str:
         )
         said = [f"binds: {r.limit}"] if r.limit else []
         said += [f"end values held by {r.outside_data_K:.1f} K"] if r.outside_data_K > 0 else []
-        said += [f"hazards: {r.hazards}"] if r.hazards else []
+        made = [
+            f"{side} made with {doping * 1e-6:.3g} carriers/cm3"
+            for side, doping in (("n", r.doping_n_per_m3), ("p", r.doping_p_per_m3))
+            if doping is not None
+        ]
+        said += [*made, *([f"hazards: {r.hazards}"] if r.hazards else [])]
         notes.append(f"  {k}: " + "; ".join(said or ["nothing binds"]))
     lines += [table_text(HEAD, rows, range(3, len(HEAD))), ""]
     lines.append(

@@ -9,6 +9,7 @@ from tegdesign.design.caution.data import SPREAD_EFFICIENCY, SPREAD_HEAT, SPREAD
 from tegdesign.design.rating import Rating
 from tegdesign.design.wording import both, millimetres, number, percent
 from tegdesign.material.material import Material, Stated
+from tegdesign.sheet.legs import known, order
 from tegdesign.sheet.section import Entry, Section, facts, section, table, words
 
 NO_CLAIM = "no conformity with any standard is claimed"
@@ -39,7 +40,7 @@ def identification(rating: Rating) -> Section:
             ("revision", rating.design.revision),
             (
                 "what it is",
-                "thermoelectric generator, computed from measured material data; not a measurement",
+                f"thermoelectric generator, computed from {_data(rating)}; not a measurement",
             ),
             (
                 "module",
@@ -51,6 +52,14 @@ def identification(rating: Rating) -> Section:
             ("program", f"tegdesign {__version__}; {NO_CLAIM}"),
         ),
     )
+
+
+def _data(rating: Rating) -> str:
+    """Say whether the material data are measured."""
+    computed = [leg for leg, m in zip("np", rating.materials, strict=True) if known(m) == "computed"]
+    if not computed:
+        return "measured material data"
+    return f"material data that are themselves computed from bands ({' and '.join(computed)} leg)"
 
 
 def geometry(rating: Rating) -> Section:
@@ -92,6 +101,7 @@ def masses(rating: Rating) -> Section:
             f"Density of {mass.material}: {number(mass.mass_kg / mass.volume_m3)} kg/m3, basis: "
             f"{mass.density_basis or 'not stated'}."
         )
+    basis += [f"Order {m.name} with {made}." for m in rating.materials if (made := order(m)) is not None]
     total = number(sum(mass.mass_kg for mass in rating.masses) * SCALES["kg"])
     rows.append(("", "all legs", str(sum(mass.legs for mass in rating.masses)), "", "", f"{total} g"))
     heads = ("leg", "material", "pieces", "size", "volume", "mass")
@@ -111,7 +121,8 @@ def _about(leg: str, m: Material) -> list[tuple[str, str]]:
     return [
         (f"{leg} leg", m.name),
         ("composition", m.composition),
-        ("measured", f"{both(m.range[0])} to {both(m.range[1])}"),
+        (known(m), f"{both(m.range[0])} to {both(m.range[1])}"),
+        *((("to be made with", made),) if (made := order(m)) is not None else ()),
         ("service limit", _stated(m.service_limit)),
         ("air limit", _stated(m.air_limit)),
         ("source", m.source or "not stated"),

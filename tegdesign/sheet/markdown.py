@@ -6,7 +6,7 @@ import re
 from collections.abc import Sequence
 
 from tegdesign.design.rating import Rating
-from tegdesign.sheet import description, performance
+from tegdesign.sheet import description, legs, performance, states
 from tegdesign.sheet.section import Block, Entry, Facts, Section, Words
 
 
@@ -16,12 +16,14 @@ def sections(rating: Rating) -> list[Section]:
         description.identification(rating),
         performance.verdict(rating),
         performance.conditions(rating),
-        performance.states(rating),
+        states.section_of_states(rating),
+        performance.nominal(rating),
         performance.limits(rating),
         performance.ceiling(rating),
         description.geometry(rating),
         performance.ladder(rating),
         performance.losses(rating),
+        legs.conduction(rating),
         performance.optima(rating),
         performance.sanity(rating),
         performance.opened(rating),

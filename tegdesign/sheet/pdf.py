@@ -10,7 +10,7 @@ from tegdesign import __version__
 from tegdesign.design.rating import Rating
 from tegdesign.design.scan import Sweep, against_hot, curve
 from tegdesign.errors import ConvergenceError
-from tegdesign.sheet import description, figures, performance, plan
+from tegdesign.sheet import description, figures, ladders, legs, performance, plan, states
 from tegdesign.sheet.page import BOTTOM, HEIGHT, LEFT, RIGHT, TOP, WIDTH, Pages, fold, shorten, text_width
 
 if TYPE_CHECKING:
@@ -59,10 +59,12 @@ def _found(find: Callable[[], Sweep]) -> Sweep | str:
 
 
 def sheet_pages(rating: Rating) -> list[Figure]:
-    """Return the pages of the sheet, three to five."""
+    """Return the pages of the sheet, three to five, one or two more with named states."""
     curves = _found(lambda: curve(rating.design)), _found(lambda: against_hot(rating.design))
     pages = Pages(SIZES[0])
     _fill(pages, lambda on: _front(on, rating), columns=1, most=1)
+    if states.named(rating):
+        _fill(pages, lambda on: _states(on, rating), columns=1, most=1)
     pages.new_page()
     _drawings(pages, rating)
     pages.new_page()
@@ -87,17 +89,30 @@ def _front(pages: Pages, rating: Rating) -> None:
     _head(pages, rating)
     for section in (
         performance.conditions(rating),
-        performance.states(rating),
-        performance.limits(rating),
+        performance.nominal(rating),
+        None if states.named(rating) else performance.limits(rating),
         performance.ceiling(rating),
         description.masses(rating),
     ):
-        pages.section(section)
+        if section:
+            pages.section(section)
+
+
+def _states(pages: Pages, rating: Rating) -> None:
+    """Write the states that are asked for with their limits, and draw their temperatures."""
+    for section in (states.section_of_states(rating), performance.limits(rating)):
+        if section:
+            pages.section(section)
+    height = ladders.ROW * len(rating.loaded)
+    pages.need(height + 100)
+    _graph(pages, "Temperatures of the states, from source to sink", ladders.EXPLAINED, rating, ladders.ladders,
+           height=height, left=100.0, right=10.0, above=40.0)  # fmt: skip
 
 
 def _behind(pages: Pages, rating: Rating) -> None:
     for section in (
         performance.losses(rating),
+        legs.conduction(rating),
         performance.optima(rating),
         performance.sanity(rating),
         performance.opened(rating),
@@ -180,7 +195,7 @@ def _graphs(pages: Pages, rating: Rating, curves: tuple[Sweep | str, Sweep | str
 
 def _graph(
     pages: Pages, title: str, conditions: str, data: Data | str, draw: Callable[[Data, Axes], None],
-    height: float = 140.0, left: float = 40.0, right: float = 40.0,
+    height: float = 140.0, left: float = 40.0, right: float = 40.0, above: float = 16.0,
 ) -> None:  # fmt: skip
     """Write a title and conditions and draw below, at most as high as the page has room."""
     pages.heading(title)
@@ -189,7 +204,7 @@ def _graph(
         pages.lines(f"Not found: {data}")
         pages.y += pages.leading
         return
-    pages.y += 16
+    pages.y += above
     height = min(height, HEIGHT - BOTTOM - 26 - pages.y)
     draw(data, pages.axes(pages.x + left, pages.y, pages.width - left - right, height))
     pages.y += height + 34

@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterable, Iterator, Sequence
 
 from tegdesign.design.rating import Check, Rating, State
 from tegdesign.design.wording import amount, both, celsius, kelvin, number, percent
+from tegdesign.sheet.legs import known
 from tegdesign.sheet.section import Entry, Section, facts, section, table, words
+from tegdesign.sheet.states import named
 
 
 def measured(check: Check, value: float, temperature: Callable[[float], str] = celsius) -> str:
@@ -47,10 +49,26 @@ def verdict(rating: Rating) -> Section:
 
 
 def limits(rating: Rating) -> Section:
-    """List every limit and requirement in every state."""
-    rows = [(*_row(c, both), "holds" if c.passed else "MISSED") for c in rating.checks]
+    """List every limit and requirement, in every state; with named states each in that of least room."""
+    shown = nearest(rating.checks) if named(rating) else rating.checks
+    rows = [(*_row(c, both), "holds" if c.passed else "MISSED") for c in shown]
     heads = ("limit or requirement", "state", "value", "limit", "room or miss", "")
-    return section("Limits and requirements", table(heads, rows, (0, 1, 5)))
+    title = "Limits and requirements"
+    if len(shown) < len(rating.checks):
+        title += f", each where least room is left (of {len(rating.checks)} in all states), all that are missed"
+    return section(title, table(heads, rows, (0, 1, 5)))
+
+
+def nearest(checks: Sequence[Check]) -> list[Check]:
+    """Return of each limit the states in which it is missed, else the one in which least room is left."""
+    kinds: dict[tuple[str, str], list[Check]] = {}
+    for c in checks:
+        kinds.setdefault((c.name, c.sense), []).append(c)
+    shown = []
+    for own in kinds.values():
+        missed = sorted((c for c in own if not c.passed), key=lambda c: c.margin)
+        shown += missed or [min(own, key=lambda c: c.margin)]
+    return shown
 
 
 def ceiling(rating: Rating) -> Section:
@@ -102,6 +120,7 @@ def _electrical(rating: Rating, s: State) -> list[tuple[str, str]]:
         ("voltage right after opening", amount(s.open_circuit_voltage_V, "V")),
         ("efficiency", percent(0.0 if power == 0 else s.efficiency, 2)),
         ("heat drawn", amount(s.heat_in_W, "W")),
+        ("heat past the legs", f"{amount(s.bypass_heat_W, 'W')} ({percent(s.bypass_heat_W / s.heat_in_W)})"),
         ("heat rejected", amount(s.heat_out_W, "W")),
         ("heat flux, hot face", f"{number(s.heat_flux_hot_W_per_m2 / 1e4)} W/cm2"),
         *_of_given_heat(rating, s),
@@ -109,13 +128,13 @@ def _electrical(rating: Rating, s: State) -> list[tuple[str, str]]:
 
 
 def _of_given_heat(rating: Rating, s: State) -> list[tuple[str, str]]:
-    """Say what a source of given heat loses by its leak, and the efficiency on all of its heat."""
+    """Say what of a given heat never reaches the module, and the efficiency on all of it."""
     given = rating.design.source.given_heat
     if given is None or s.efficiency_of_given_heat is None:
         return []
     return [
-        ("leak of the source", amount(given - s.heat_in_W, "W")),
-        ("efficiency, leak included", percent(max(s.efficiency_of_given_heat, 0.0), 2)),
+        ("heat lost before the module", amount(given - s.heat_in_W, "W")),
+        ("efficiency on all heat given", percent(max(s.efficiency_of_given_heat, 0.0), 2)),
     ]
 
 
@@ -133,11 +152,12 @@ def _thermal(s: State) -> list[tuple[str, str]]:
     ]
 
 
-def states(rating: Rating) -> Section:
-    """Put all states side by side."""
-    columns = [_electrical(rating, s) + _thermal(s) for s in rating.states]
+def nominal(rating: Rating) -> Section:
+    """Put the usual states of the nominal case side by side."""
+    columns = [_electrical(rating, s) + _thermal(s) for s in rating.nominal]
     rows = [(pairs[0][0], *(value for _, value in pairs)) for pairs in zip(*columns, strict=True)]
-    return section("States", table(("", *(s.name for s in rating.states)), rows))
+    title = "States of the nominal case" if named(rating) else "States"
+    return section(title, table(("", *(s.name for s in rating.nominal)), rows))
 
 
 def rated(rating: Rating) -> Section:
@@ -159,8 +179,26 @@ def rated(rating: Rating) -> Section:
     after = next(k for k, pair in enumerate(lines) if pair[0] == "internal resistance") + 1
     balance = f"{amount(abs(s.heat_balance_residual_W), 'W', 2)} left over in the balance of heat and power"
     return section(
-        "Rated state", facts(*lines[:after], *shares, *lines[after:], *density, ("check", balance))
+        "Rated state",
+        facts(*lines[:after], *shares, *lines[after:], *density, *_load_lines(rating), ("check", balance)),
     )
+
+
+def _load_lines(rating: Rating) -> Iterator[tuple[str, str]]:
+    """Yield what of the power reaches the user, and what the load needs and bears against what it gets."""
+    s, load = rating.rated, rating.design.load
+    taken = s.power_W - s.delivered_power_W
+    if abs(taken) > 1e-9 * abs(s.power_W):
+        share = percent(s.delivered_power_W / s.power_W) if s.power_W > 0 else "-"
+        yield (
+            "power to the user",
+            f"{amount(s.delivered_power_W, 'W')}, {share} of the power; the load takes {amount(taken, 'W')}",
+        )
+    around = {state.name for state in rating.around(rating.loaded[0])}
+    for name in dict.fromkeys(limit.name for limit in load.limits()):
+        for c in (c for c in rating.checks if c.name == name and c.state in around):
+            verdict = f"holds, {room(c)} of room" if c.passed else f"MISSED by {room(c)}"
+            yield name, f"{measured(c, c.value)} ({c.state}), at {c.sense} {measured(c, c.limit)}: {verdict}"
 
 
 def ladder(rating: Rating) -> Section:
@@ -208,7 +246,7 @@ def optima(rating: Rating) -> Section:
     """Put the state of most power beside that of best efficiency."""
     power, efficient = rating.state("most power"), rating.state("best efficiency")
     shown = (rating.rated, power, efficient)
-    columns = [_electrical(rating, s)[:9] + _thermal(s)[1:3] for s in shown]
+    columns = [_electrical(rating, s)[:10] + _thermal(s)[1:3] for s in shown]
     rows = [(pairs[0][0], *(value for _, value in pairs)) for pairs in zip(*columns, strict=True)]
     return section(
         "Most power and best efficiency",
@@ -302,14 +340,18 @@ def shorted(rating: Rating) -> Section:
     )
 
 
+def _and(words_: Iterable[str]) -> str:
+    return " and ".join(dict.fromkeys(words_))
+
+
 def data_range(rating: Rating) -> Section:
     """Say whether the states stay inside the measured temperatures."""
     ranges = [
-        (f"{leg} leg", f"{m.name}: measured from {both(m.range[0])} to {both(m.range[1])}")
+        (f"{leg} leg", f"{m.name}: {known(m)} from {both(m.range[0])} to {both(m.range[1])}")
         for leg, m in zip("np", rating.materials, strict=True)
     ]
     if not rating.held:
-        return section("Data range", facts(*ranges), words("All states lie inside the measured range."))
+        return section("Data range", facts(*ranges), words(f"All states lie inside the {_and(known(m) for m in rating.materials)} range."))
     rows = [(d.leg, d.state, kelvin(d.below_K), kelvin(d.above_K)) for d in rating.held]
     heads = ("leg", "state", "held below", "held above")
     return section("Data range", facts(*ranges), table(heads, rows, (0, 1)))

@@ -4,8 +4,9 @@ from __future__ import annotations
 
 from tegdesign.design.rating import Check
 from tegdesign.design.size import Sizing
+from tegdesign.sheet.legs import making
 from tegdesign.sheet.table import table_text
-from tegdesign.sheet.text import rating_report
+from tegdesign.sheet.text import rating_report, section_text
 
 AIM_UNIT = {"power": "W", "efficiency": "%", "power per footprint": "W/m2", "power per material mass": "W/kg"}
 
@@ -46,7 +47,8 @@ def sizing_report(sizing: Sizing) -> str:
         binding = "What binds (more would need this to give way)\n" + table_text(
             ["limit", "here", "bound"], rows
         )
-    parts = [verdict(sizing), aim, binding, rating_report(sizing.rating).rstrip()]
+    made = [] if sizing.making is None else [section_text(making(sizing.making))]
+    parts = [verdict(sizing), aim, binding, *made, rating_report(sizing.rating).rstrip()]
     if sizing.assumed_limits:
         rows = [[key, _value(value)] for key, value in sizing.assumed_limits.items()]
         parts.append(

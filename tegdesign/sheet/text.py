@@ -7,7 +7,7 @@ from collections.abc import Sequence
 from itertools import zip_longest
 
 from tegdesign.design.rating import Rating
-from tegdesign.sheet import description, performance
+from tegdesign.sheet import description, legs, performance, states
 from tegdesign.sheet.section import Block, Entry, Facts, Section, Table, Words
 from tegdesign.sheet.table import table_text
 
@@ -22,9 +22,11 @@ def rating_report(rating: Rating) -> str:
         performance.ceiling(rating),
         description.geometry(rating),
         performance.conditions(rating),
+        states.section_of_states(rating),
         performance.rated(rating),
         performance.ladder(rating),
         performance.losses(rating),
+        legs.conduction(rating),
         performance.optima(rating),
         performance.sanity(rating),
         performance.opened(rating),
@@ -67,14 +69,19 @@ def fold(text: str, width: int, first: str = "", rest: str | None = None) -> str
 
 
 def fitted(block: Table, width: int) -> str:
-    """Return a table of at most ``width`` characters: its widest columns of words are folded."""
+    """Return a table of at most ``width`` characters: heads of numbers are folded, then the widest columns of words."""
     lines = [block.heads, *block.rows]
     widths = [max(len(line[k]) for line in lines) for k in range(len(block.heads))]
     words = [k for k in range(len(widths)) if k not in block.right]
-    while sum(widths) + 2 * (len(widths) - 1) > width and max(widths[k] for k in words) > 12:
+    if sum(widths) + 2 * (len(widths) - 1) > width:
+        for k in block.right:
+            heads = block.heads[k].split() or [""]
+            widths[k] = max(len(cell) for cell in (*heads, *(row[k] for row in block.rows)))
+    while sum(widths) + 2 * (len(widths) - 1) > width and max(widths[k] for k in words) > 10:
         widths[max(words, key=lambda k: widths[k])] -= 1
     rows = [row for line in block.rows for row in _folded(line, widths)]
-    return table_text(block.heads, rows, block.right)
+    heads = [textwrap.fill(head, width) if head else "" for head, width in zip(block.heads, widths, strict=True)]
+    return table_text(heads, rows, block.right)
 
 
 def _folded(cells: Sequence[str], widths: Sequence[int]) -> list[list[str]]:

@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 from tegdesign.errors import ConvergenceError
 from tegdesign.leg.exact import Slopes
 from tegdesign.material.curve import Array
-from tegdesign.module.module import Flows, Modules, flows
+from tegdesign.module.module import EXACT, Accuracy, Flows, Modules, flows
 from tegdesign.system.law import Law
 from tegdesign.system.load.base import LoadLaw, MixedLoads, Terminal
 
@@ -67,8 +67,16 @@ def first_guess(modules: Modules, source: Law, sink: Law) -> tuple[Array, Array,
     """Return junction temperatures and current by conduction alone, with the Peltier heat as extra conductance."""
     hot = np.full(modules.size, 400.0)
     cold = np.full(modules.size, 320.0)
-    current = np.zeros(modules.size)
-    for _ in range(3):
+    heat, current = np.zeros(modules.size), np.zeros(modules.size)
+    given, most = (source, sink), np.full(modules.size, np.inf)
+    bent = bool(source.terms or sink.terms)
+    if bent:  # tangents are taken between the temperatures without heat, where they meet
+        most, least = source.open_temperature, sink.open_temperature
+        span = np.where(np.isfinite(most) & (most > least), most - least, 0.0)
+        hot, cold = np.where(span > 0, least + 0.75 * span, hot), np.where(span > 0, least + 0.25 * span, cold)
+    for _ in range(8 if bent else 3):
+        source = given[0].tangent(hot + modules.resistance_hot * heat, heat)
+        sink = given[1].tangent(cold - modules.resistance_cold * heat, -heat)
         mean, difference = (hot + cold) / 2, np.maximum(hot - cold, 1.0)
         seebeck, resistance, conductance = _couple_at(modules, mean, hot, cold)
         zt = seebeck**2 * mean / (resistance * conductance)
@@ -80,7 +88,11 @@ def first_guess(modules: Modules, source: Law, sink: Law) -> tuple[Array, Array,
         determinant = (source.a + k_hot) * (sink.a + k_cold) - k_hot * k_cold
         hot = (source.c * (sink.a + k_cold) + k_hot * sink.c) / determinant
         cold = (sink.c * (source.a + k_hot) + k_cold * source.c) / determinant
+        if bent:
+            hot = np.minimum(hot, most)
+            cold = np.minimum(cold, hot)
         hot, cold = np.clip(hot, 60.0, 4000.0), np.clip(cold, 50.0, 3900.0)
+        heat = k * (hot - cold)
         current = seebeck * np.maximum(hot - cold, 0.0) / (2 * resistance)
     return hot, cold, current
 
@@ -90,8 +102,9 @@ def _couple_at(modules: Modules, mean: Array, hot: Array, cold: Array) -> tuple[
     seebeck, resistance, conductance = np.zeros(mean.shape), np.zeros(mean.shape), np.zeros(mean.shape)
     for which, area, sign in ((modules.n, modules.area_n, -1.0), (modules.p, modules.area_p, 1.0)):
         area = np.broadcast_to(area, mean.shape)
-        for k in np.unique(which):
-            m, material = which == k, modules.materials[k]
+        alone = which[:1] if (which == which[:1]).all() else None  # the usual case is spared the masks
+        for k in np.unique(which) if alone is None else alone:
+            m, material = which == k if alone is None else slice(None), modules.materials[k]
             t = np.clip(mean[m], *material.range)
             seebeck[m] += sign * material.seebeck_coefficient(t)
             resistance[m] += material.resistivity(t) / area[m]
@@ -113,6 +126,8 @@ def operating_point(
     max_iterations: int = 60,
     check: bool = True,
     guess: tuple[Array, Array, Array] | None = None,
+    legs: Accuracy = EXACT,
+    extrapolate: bool = False,
 ) -> OperatingPoint:
     """Solve a batch of generators for both junction temperatures and the current of one module.
 
@@ -127,6 +142,11 @@ def operating_point(
         Raise where a design did not converge; otherwise look at ``converged``.
     guess : tuple of arrays, optional
         Hot junction, cold junction, current to start from.
+    legs : Accuracy
+        How well the legs are solved.
+    extrapolate : bool
+        Add the last Newton step to temperatures, current, voltage and heats, by their slopes: the error is then the
+        square of the step, so that a search can stop at a large one. Resistances and residual stay as they were.
 
     Raises
     ------
@@ -142,11 +162,13 @@ def operating_point(
     result = _Record(size)
     todo = np.arange(size)
     limit = np.full(size, np.inf)
+    secant = np.full((3, size), np.nan)
     part, s, k, law = modules, source, sink, load
     for iteration in range(1, max_iterations + 1):
         h, c, i = hot[todo], cold[todo], current[todo]
-        now = flows(part, h, c, i)
-        step_h, step_c, step_i, terminal, misfit = _newton(part, s, k, law, h, c, i, now)
+        now = flows(part, h, c, i, legs)
+        steps_now = _newton(part, s, k, law, h, c, i, now, secant[:, todo])
+        step_h, step_c, step_i, terminal, misfit, secant[:, todo] = steps_now
         balance = _balance(part, i, now, misfit)
         with np.errstate(divide="ignore", invalid="ignore"):
             size_now = np.maximum(np.abs(step_h), np.abs(step_c)) / np.abs(h - c)
@@ -156,15 +178,16 @@ def operating_point(
         usable = np.isfinite(size_now) & now.converged
         done &= usable
         limit[todo] = size_now
-        result.store(todo, h, c, i, now, terminal, balance, part, done, iteration)
         # damping: the legs stay warmer on the hot side, the current below the short-circuit current
-        with np.errstate(invalid="ignore"):
+        with np.errstate(invalid="ignore", over="ignore"):
             old = h - c
             shrink = np.where(old + step_h - step_c < 0.2 * old, 0.8 * old / np.maximum(step_c - step_h, 1e-300), 1.0)
             reach = np.maximum(np.abs(step_h), np.abs(step_c))
             shrink = np.minimum(shrink, np.minimum(1.0, 400.0 / np.maximum(reach, 1e-300)))
             ceiling = 1.02 * now.open_voltage / now.internal_resistance
             next_i = np.where(free[todo], np.clip(i + step_i, 0.0, ceiling), i)
+            steps = (step_h, step_c, next_i - i) if extrapolate else None
+            result.store(todo, h, c, i, now, terminal, balance, part, done, iteration, steps)
         # a state that the legs cannot carry (temperature not monotone) is taken back half way
         for values, here, there in zip(
             (hot, cold, current), (h, c, i), (h + shrink * step_h, c + shrink * step_c, next_i), strict=True
@@ -181,8 +204,10 @@ def operating_point(
             todo = todo[go_on]
             part, s, k, law = modules.take(todo), source.take(todo), sink.take(todo), load.take(todo)
     point = result.freeze()
+    known = source.known(point.hot_face, point.heat_in) & sink.known(point.cold_face, -point.heat_out)
+    point.converged[:] &= known
     if check:
-        _insist(point)
+        _insist(point, known)
     return point
 
 
@@ -195,15 +220,21 @@ def _newton(
     cold: Array,
     current: Array,
     now: Flows,
-) -> tuple[Array, Array, Array, Terminal, tuple[Array, Array]]:
-    """Return the steps in both temperatures and the current; the two heat equations are eliminated by hand."""
+    before: Array,
+) -> tuple[Array, Array, Array, Terminal, tuple[Array, Array], Array]:
+    """Return the steps in both temperatures and the current; the two heat equations are eliminated by hand.
+
+    Current, condition of the load and its slope (3, B) of the step ``before`` mend the slope of this one, since some
+    loads cannot know it well: by as much as the slopes failed to foretell the change of the condition.
+    """
     rh, rc = modules.resistance_hot, modules.resistance_cold
     qh, qc = now.heat_hot_slopes, now.heat_cold_slopes
-    weight_h, weight_c = source.a * rh + source.b, -(sink.a * rc + sink.b)
-    f_h = source.misfit(hot + rh * now.heat_hot, now.heat_hot)
-    f_c = sink.misfit(cold - rc * now.heat_cold, -now.heat_cold)
-    m11, m12, m1 = source.a + weight_h * qh.hot, weight_h * qh.cold, weight_h * qh.current
-    m21, m22, m2 = weight_c * qc.hot, sink.a + weight_c * qc.cold, weight_c * qc.current
+    face_h, face_c = hot + rh * now.heat_hot, cold - rc * now.heat_cold
+    f_h, a_h, b_h = source.evaluate(face_h, now.heat_hot)
+    f_c, a_c, b_c = sink.evaluate(face_c, -now.heat_cold)
+    weight_h, weight_c = a_h * rh + b_h, -(a_c * rc + b_c)
+    m11, m12, m1 = a_h + weight_h * qh.hot, weight_h * qh.cold, weight_h * qh.current
+    m21, m22, m2 = weight_c * qc.hot, a_c + weight_c * qc.cold, weight_c * qc.current
     with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
         determinant = m11 * m22 - m12 * m21
 
@@ -219,14 +250,17 @@ def _newton(
         moved_q = now.heat_hot + qh.hot * free_h + qh.cold * free_c
         terminal = Terminal(current, moved_v, v_slope, moved_q, q_slope)
         value, slope = load.evaluate(terminal)
-        step_i = -value / slope
-    misfit = _as_heat(f_h, weight_h, source), _as_heat(f_c, weight_c, sink)
-    return free_h + by_i_h * step_i, free_c + by_i_c * step_i, step_i, terminal, misfit
+        foretold = (current - before[0]) * (slope + before[2]) / 2
+        mend = (value - before[1]) / foretold
+        step_i = -value / (slope * np.clip(np.where(np.isfinite(mend), mend, 1.0), 0.5, 2.0))
+    misfit = _as_heat(f_h, weight_h, a_h * face_h), _as_heat(f_c, weight_c, a_c * face_c)
+    after = np.array([current, value, slope])
+    return free_h + by_i_h * step_i, free_c + by_i_c * step_i, step_i, terminal, misfit, after
 
 
-def _as_heat(misfit: Array, weight: Array, law: Law) -> Array:
+def _as_heat(misfit: Array, weight: Array, scale: Array) -> Array:
     """Return the misfit of a boundary law as heat [W]; none where it is only the rounding of temperatures."""
-    real = (np.abs(misfit) > 4 * np.finfo(float).eps * np.abs(law.c)) & (weight != 0)
+    real = (np.abs(misfit) > 4 * np.finfo(float).eps * np.abs(scale)) & (weight != 0)
     return np.where(real, misfit, 0.0) / np.where(real, weight, 1.0)
 
 
@@ -256,22 +290,31 @@ class _Record:
         modules: Modules,
         done: NDArray[np.bool_],
         iteration: int,
+        steps: tuple[Array, Array, Array] | None,
     ) -> None:
-        """Keep one evaluation."""
+        """Keep one evaluation, moved by ``steps`` along its slopes."""
+        voltage, heat_hot, heat_cold = now.voltage, now.heat_hot, now.heat_cold
+        if steps is not None:
+            slopes = now.voltage_slopes, now.heat_hot_slopes, now.heat_cold_slopes
+            voltage, heat_hot, heat_cold = (
+                value + sum(slope * step for slope, step in zip(by, steps, strict=True))
+                for value, by in zip((voltage, heat_hot, heat_cold), slopes, strict=True)
+            )
+            hot, cold, current = hot + steps[0], cold + steps[1], current + steps[2]
         new = {
             "hot_junction": hot,
             "cold_junction": cold,
-            "hot_face": hot + modules.resistance_hot * now.heat_hot,
-            "cold_face": cold - modules.resistance_cold * now.heat_cold,
+            "hot_face": hot + modules.resistance_hot * heat_hot,
+            "cold_face": cold - modules.resistance_cold * heat_cold,
             "current": current,
-            "voltage": now.voltage,
+            "voltage": voltage,
             "open_voltage": now.open_voltage,
             "internal_resistance": now.internal_resistance,
             "leg_resistance_n": now.leg_resistance_n,
             "leg_resistance_p": now.leg_resistance_p,
             "electrode_resistance": now.electrode_resistance,
-            "heat_in": now.heat_hot,
-            "heat_out": now.heat_cold,
+            "heat_in": heat_hot,
+            "heat_out": heat_cold,
             "bypass": now.bypass,
             "balance_residual": balance,
             "voltage_slope": terminal.voltage_slope,
@@ -287,11 +330,16 @@ class _Record:
         return OperatingPoint(**self.values)
 
 
-def _insist(point: OperatingPoint) -> None:
+def _insist(point: OperatingPoint, known: NDArray[np.bool_]) -> None:
     if np.all(point.converged):
         return
     bad = np.flatnonzero(~point.converged)
     k = bad[0]
+    if not known[k]:
+        raise ConvergenceError(
+            f"design number {k} asks for {point.heat_in[k]:.4g} W in and {point.heat_out[k]:.4g} W out per module, "
+            "which the table of its source or sink does not reach; give the table points of more heat"
+        )
     raise ConvergenceError(
         f"operating point not found for {bad.size} of {point.converged.size} designs; the first (number {k}) "
         f"stopped at junctions {point.hot_junction[k]:.1f} K and {point.cold_junction[k]:.1f} K, "

@@ -1,7 +1,9 @@
-"""Whole-process times as a user feels them: ``python tests/benchmarks/startup.py [--quick]``.
+"""Whole-process times as a user feels them, then solving alone: ``python tests/benchmarks/startup.py [--quick]``.
 
 Every command runs in a process of its own, in turn with a bare ``import numpy, scipy.optimize``, so that a busy
-machine slows both; the table gives medians and their ratio to the bare import of the same run.
+machine slows both; the table gives medians and their ratio to the bare import of the same run. A second table gives
+the processor time of ``size`` for every example, from the read brief with its materials at hand to the rated design,
+in turn with 1000 single legs solved to the default accuracy.
 """
 
 from __future__ import annotations
@@ -34,8 +36,41 @@ def measure(command: list[str], folder: str) -> float:
     return time.perf_counter() - start
 
 
+def solving(repeats: int) -> None:
+    """Print the time of search, rounding and rating of each shipped example, and its ratio to the reference."""
+    sys.path.insert(0, str(HERE))
+    import numpy as np
+
+    from tegdesign.design.brief import read_brief
+    from tegdesign.design.size import size
+    from tegdesign.leg.exact import solve_leg
+    from tegdesign.material import library
+
+    material = library.find("bismuth-telluride-p-sb1.54")
+    hot, cold, current = np.linspace(400.0, 480.0, 1000), np.full(1000, 320.0), np.linspace(0.0, 20.0, 1000)
+
+    def legs() -> None:
+        solve_leg(material, hot, cold, current, slopes=True)
+
+    briefs = {path.stem: read_brief(path) for path in sorted(EXAMPLES.glob("*.toml"))}
+    one_pair = {name: brief for name, brief in briefs.items() if len(brief.materials.n) == len(brief.materials.p) == 1}
+    jobs = {"1000 legs": legs} | {name: lambda brief=brief: size(brief) for name, brief in one_pair.items()}
+    times: dict[str, list[float]] = {name: [] for name in jobs}
+    for number in range(repeats + 1):
+        for name, job in jobs.items():
+            start = time.process_time()
+            job()
+            if number:  # the first prepares the materials
+                times[name].append(time.process_time() - start)
+    reference = statistics.median(times["1000 legs"])
+    print(f"\n{'solving, processor time':36}{'median [s]':>12}{'smallest [s]':>14}{'ratio':>8}   runs each: {repeats}")
+    for name, found in times.items():
+        median = statistics.median(found)
+        print(f"{name:36}{median:12.4f}{min(found):14.4f}{median / reference:8.1f}")
+
+
 def main() -> None:
-    """Print the table."""
+    """Print the tables."""
     parser = argparse.ArgumentParser(description=__doc__.splitlines()[0])
     parser.add_argument("--quick", action="store_true", help="each job once, to see that it runs")
     quick = parser.parse_args().quick
@@ -54,6 +89,7 @@ def main() -> None:
     for name, found in times.items():
         median = statistics.median(found)
         print(f"{name:36}{median:12.3f}{min(found):14.3f}{median / reference:8.2f}")
+    solving(repeats)
 
 
 if __name__ == "__main__":

@@ -70,9 +70,13 @@ def test_filters():
         "silicon-germanium-p",
     ]
     lead = {"bismuth-oxyselenide-p", "lead-telluride-n", "lead-telluride-p", "tin-selenide-p"}
+    lead |= {"lead-telluride-n-bands", "lead-telluride-p-bands"}
     assert set(names("--with", "lead")) == lead
     assert set(names("--without", "lead")) == every - lead
-    assert set(names("--with", "lead", "--without", "selenium", "--polarity", "p")) == {"lead-telluride-p"}
+    assert set(names("--with", "lead", "--without", "selenium", "--polarity", "p")) == {
+        "lead-telluride-p",
+        "lead-telluride-p-bands",
+    }
 
 
 def test_nothing_left_is_no_error():

@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 from scipy.integrate import solve_bvp
 from scipy.interpolate import PchipInterpolator
 
+from tegdesign.material.curve import Curve
 from tegdesign.material.material import Material
 
 Array = NDArray[np.float64]
@@ -39,8 +40,15 @@ class Properties:
 
     def __init__(self, material: Material) -> None:
         curves = (material.seebeck_coefficient, material.resistivity, material.thermal_conductivity)
-        self.curves = [PchipInterpolator(c.temperature, c.value) for c in curves]
+        self.curves = [PchipInterpolator(t, c(t)) for c, t in ((c, self.points(c)) for c in curves)]
         self.ranges = [c.range for c in curves]
+
+    @staticmethod
+    def points(curve: Curve) -> Array:
+        """Points of a table; of a computed property so many that the cubic between them does not matter."""
+        if curve.pieces is None:
+            return curve.temperature
+        return np.unique(np.concatenate([curve.temperature, np.linspace(*curve.range, 2001)]))
 
     def __call__(self, temperature: Array) -> list[Array]:
         return [c(np.clip(temperature, *r)) for c, r in zip(self.curves, self.ranges, strict=True)]

@@ -9,7 +9,7 @@ from tegdesign.material import library
 
 @pytest.mark.parametrize("name", library.names())
 def test_power_and_heats_of_shipped_materials(name, reference):
-    # 30 materials over their widest span; found: power within 4e-8, heats within 5e-9 (copper selenide, 1.2)
+    # all materials over their widest span; found: power within 4e-8, heats within 5e-9 (copper selenide, 1.2)
     material = library.find(name)
     cold, hot = material.range
     matched = reference.matched_current(material, hot, cold)

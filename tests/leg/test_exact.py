@@ -11,6 +11,8 @@ from scipy.integrate import quad
 from tegdesign.errors import ConvergenceError
 from tegdesign.leg.closed_form import couple
 from tegdesign.leg.exact import solve_leg
+from tegdesign.leg.nodes import integration
+from tegdesign.leg.panels import gauss_rule
 from tegdesign.material import library
 from tegdesign.material.curve import Curve
 from tegdesign.material.material import Material
@@ -276,3 +278,17 @@ def test_hardly_any_difference_is_right(curved):
 def test_an_open_iteration_is_not_called_converged(curved):
     leg = solve_leg(curved, 880.0, 320.0, 3000.0, max_iterations=1, tolerance=1e-13, check=False)
     assert not leg.converged
+
+
+@pytest.mark.parametrize("size", [3, 400])
+def test_integrals_over_panels_are_those_of_the_matrix(size):
+    """Small batches go through one matrix, large ones panel by panel; polynomials of degree 3 are exact in both."""
+    panels, points = 14, 4
+    rule = integration(points, panels)
+    x = (np.arange(panels)[:, None] + gauss_rule(points)[0]).ravel()  # panels of width one
+    powers = np.linspace(0, 3, size).round()
+    got = rule.running(x[:, None] ** powers)
+    assert (rule.matrix.size * size > 200_000) == (size == 400)
+    assert_allclose(got[:-1], x[:, None] ** (powers + 1) / (powers + 1), rtol=1e-12)
+    assert_allclose(got[-1], panels ** (powers + 1) / (powers + 1), rtol=1e-12)
+    assert_allclose(rule.whole(x[:, None] ** powers), got[-1], rtol=1e-12)

@@ -4,7 +4,7 @@ from numpy.testing import assert_allclose
 
 from tegdesign.errors import InputError
 from tegdesign.system.boundary import Film, FixedHeat, Stream, Surface
-from tegdesign.system.boundary.base import fin_factor
+from tegdesign.system.boundary.exchanger import fin_factor
 from tegdesign.system.law import join, law
 
 FOOTPRINT = np.array([1.6e-3, 4e-3])
@@ -69,7 +69,7 @@ def test_stream_of_many_transfer_units_gives_all_it_has():
 
 
 def test_stream_leaves_with_what_the_modules_left_it():
-    name, outlet = stream().stations(FACE, np.array([210.0, 420.0]))[1]
+    name, outlet = stream().stations(FACE, np.array([210.0, 420.0]), COUNT * FOOTPRINT)[1]
     assert name == "stream outlet"
     assert_allclose(outlet, [500 - 10, 500 - 20], rtol=1e-12)  # 21 W/K
 

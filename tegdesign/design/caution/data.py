@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from tegdesign.design.caution.common import PRACTICE, caution
+from tegdesign.design.condition import RATED
 from tegdesign.design.rating import Caution, Rating
 from tegdesign.design.wording import amount, kelvin, percent
 
@@ -79,17 +80,24 @@ def implausible(rating: Rating) -> Iterator[Caution]:
 
 def measured_spread(rating: Rating) -> Iterator[Caution]:
     """Warn when what is asked for leaves less room than laboratories differ in measuring one module."""
-    require, rated = rating.design.require, rating.rated
+    require = rating.design.require
+    held = [(c, rating.state(c.name)) for c in rating.loaded]
+    powers = [(s.delivered_power_W, s.name) for c, s in held if "power" in c.held]
+    efficiencies = [(s.efficiency, s.name) for c, s in held if "efficiency" in c.held]
     asked = (
-        ("power", rated.power_W, require.power, amount(require.power, "W"), SPREAD_POWER),
-        ("efficiency", rated.efficiency, require.efficiency, percent(require.efficiency), SPREAD_EFFICIENCY),
+        ("power", powers, require.power, amount(require.power, "W"), SPREAD_POWER),
+        ("efficiency", efficiencies, require.efficiency, percent(require.efficiency), SPREAD_EFFICIENCY),
     )
-    rooms = [
-        f"{name} {percent(abs(value / needed - 1))} {'above' if value >= needed else 'below'} the required "
-        f"{shown}"
-        for name, value, needed, shown, spread in asked
-        if needed is not None and value / needed - 1 < spread
-    ]
+    rooms = []
+    for name, values, needed, shown, spread in asked:
+        if needed is None:
+            continue
+        value, state = min(values)  # the rated state is always held
+        room = value / needed - 1
+        if room < spread:
+            where = "" if state == RATED else f" ({state})"
+            side = "above" if room >= 0 else "below"
+            rooms.append(f"{name} {percent(abs(room))} {side} the required {shown}{where}")
     if not rooms and (require.power or require.efficiency):
         return
     yield caution(

@@ -76,14 +76,14 @@ def electrode_current(rating: Rating) -> Iterator[Caution]:
 
 
 def leg_current(rating: Rating) -> Iterator[Caution]:
-    """Warn of a high steady current density in the legs at the rated load."""
-    rated = rating.rated
-    density = max(rated.current_density_n_A_per_m2, rated.current_density_p_A_per_m2)
+    """Warn of a high steady current density in the legs in a state that is asked for."""
+    densities = [(max(s.current_density_n_A_per_m2, s.current_density_p_A_per_m2), s.name) for s in rating.asked]
+    density, state = max(densities, key=lambda pair: pair[0])
     if density > LEG_DENSITY:
         yield caution(
             "leg-current-density",
             "High steady current density in the legs",
-            f"{number(density / 1e6)} A/mm2 (rated)",
+            f"{number(density / 1e6)} A/mm2 ({state})",
             f"{LEG_DENSITY / 1e6:g} A/mm2",
             "Joints and metal films drift under such a current, and leads and straps lose much: look again "
             "at the leg length, the joints and the metal.",

@@ -9,7 +9,7 @@ from tegdesign.design.rating import Caution, Rating
 
 REACTIVE = ("burning-dust", "reacts-with-moisture")
 NOT_TOXIC = (*REACTIVE, "copper")  # any other tag, also one of a user's own file, counts as toxic
-MARKS = ("USE WITH CARE", "COMPOSITION DOUBTFUL")
+MARKS = ("USE WITH CARE", "COMPOSITION DOUBTFUL", "computed from bands, not measured")
 
 
 def toxic(rating: Rating) -> Iterator[Caution]:

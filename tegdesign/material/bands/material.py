@@ -43,6 +43,16 @@ class BandMaterial(Material):
     grain_bounds: tuple[float, float] | None = None
     laid_over: str = ""
 
+    @property
+    def kind(self) -> str:
+        """Kind of its file."""
+        return "bands"
+
+    @property
+    def majority_doping(self) -> float:
+        """Carriers that the dopants give, at the cold end where graded [1/m^3]."""
+        return self.doping.cold
+
     def response(self, temperature: ArrayLike) -> BandResponse:
         """Return carriers and electronic properties at temperatures [K] inside the range."""
         t = np.asarray(temperature, dtype=float)

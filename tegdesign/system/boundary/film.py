@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from typing import Annotated, Literal
+from typing import Literal
 
-from pydantic import Field
+from pydantic import model_validator
 
 from tegdesign.material.curve import Array
-from tegdesign.quantity import Measure
-from tegdesign.system.boundary.base import Boundary, Positive, Temperature, fin_factor, spread
+from tegdesign.system.boundary.base import Area, Boundary, Coefficient, Temperature
+from tegdesign.system.boundary.exchanger import Enlargement, FinEfficiency, Fins, Fouling, fins_once, on_base
 from tegdesign.system.law import Law, law
 
 
@@ -17,15 +17,24 @@ class Film(Boundary):
 
     kind: Literal["film"] = "film"
     temperature: Temperature
-    coefficient: Annotated[float, Measure("W/m^2/K"), Positive]
-    area: Annotated[float, Measure("m^2", "cm^2"), Positive] | None = None
-    area_enlargement: Annotated[float, Measure(""), Field(ge=1)] = 1.0
-    fin_efficiency: Annotated[float, Measure(""), Field(gt=0, le=1)] = 1.0
+    coefficient: Coefficient
+    area: Area | None = None
+    area_enlargement: Enlargement = 1.0
+    fin_efficiency: FinEfficiency = 1.0
+    fouling_resistance: Fouling | None = None
+    fins: Fins | None = None
 
-    def law(self, footprint: Array, modules: Array) -> Law:
-        """Return Q = h A (1 + efficiency (enlargement - 1)) (T_fluid - T_face); A is the footprint if not given."""
+    @model_validator(mode="after")
+    def _fins_once(self) -> Film:
+        fins_once(self.area_enlargement, self.fin_efficiency, self.fins)
+        return self
+
+    def bare_law(self, footprint: Array, modules: Array) -> Law:
+        """Return Q = h A (fins) (T_fluid - T_face); A is the footprint if not given."""
         area = footprint if self.area is None else self.area / modules
-        g = self.coefficient * area * fin_factor(self.area_enlargement, self.fin_efficiency)
+        g = area * on_base(
+            self.coefficient, self.area_enlargement, self.fin_efficiency, self.fouling_resistance, self.fins
+        )
         return law(g, 1.0, g * self.temperature, footprint)
 
     @property
@@ -37,6 +46,6 @@ class Film(Boundary):
         """Return the film with a fluid of another temperature [K]."""
         return self.model_copy(update={"temperature": temperature})
 
-    def stations(self, face: Array, heat: Array) -> list[tuple[str, Array]]:
+    def places(self, heat: Array) -> list[tuple[str, float | Array]]:
         """Return the fluid."""
-        return [("fluid", spread(self.temperature, face))]
+        return [("fluid", self.temperature)]

@@ -5,12 +5,8 @@ from __future__ import annotations
 from typing import Literal
 
 from tegdesign.material.curve import Array
-from tegdesign.system.load.base import Load, LoadLaw, Terminal, numbers
-
-
-def most_power(at: Terminal, number: Array) -> tuple[Array, Array]:
-    """Return dP/dI = V + I dV/dI and its slope, V taken as straight in I; exact once the condition is met."""
-    return at.voltage + at.current * at.voltage_slope, 2 * at.voltage_slope
+from tegdesign.system.load.base import Load, LoadLaw, numbers
+from tegdesign.system.load.laws import most_power
 
 
 class Matched(Load):

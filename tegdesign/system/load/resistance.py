@@ -8,12 +8,8 @@ from pydantic import Field
 
 from tegdesign.material.curve import Array
 from tegdesign.quantity import Measure
-from tegdesign.system.load.base import Load, LoadLaw, Terminal, numbers
-
-
-def ohmic(at: Terminal, number: Array) -> tuple[Array, Array]:
-    """Return V - I R of one module and its slope."""
-    return at.voltage - at.current * number, at.voltage_slope - number
+from tegdesign.system.load.base import Load, LoadLaw, numbers
+from tegdesign.system.load.laws import ohmic
 
 
 class Resistance(Load):
