@@ -18,8 +18,8 @@ from tegdesign.design.space import Problems
 from tegdesign.material.curve import Array
 from tegdesign.material.material import Material
 
-_STEPS = (0.7, 0.28, 0.1)  # of the logarithms, one round of trials each
-_GEOMETRY = 0.05  # widest step of the geometry that follows each trial, of the box of the search
+_STEPS = (0.6, 0.2)  # of the logarithms, one round of trials each
+_GEOMETRY = 0.03  # widest step of the geometry that follows each trial, of the box of the search
 _ROUGH = 1e-5  # of the properties while trying
 _STEEPEST = np.log(10.0) / 2  # a grade changes the doping tenfold at most: beyond that it is hard to make
 _WORTH = 1e-4  # of the objective; a grade that gains less is left out

@@ -30,7 +30,8 @@ from tegdesign.material import library  # noqa: E402
 from tegdesign.material.curve import Array  # noqa: E402
 from tegdesign.material.material import Material  # noqa: E402
 
-MATERIALS = ("bismuth-telluride-p-sb1.54", "skutterudite-n", "silicon-germanium-n")  # 5, 12 and 12 points
+# tables of 5, 12 and 12 points, and one computed from bands
+MATERIALS = ("bismuth-telluride-p-sb1.54", "skutterudite-n", "silicon-germanium-n", "lead-telluride-p-bands")
 POINTS, TOLERANCE = 3, 2e-5
 
 

@@ -209,7 +209,10 @@ class _Search:
             partial(self.residuals, predict), scaled, jac=partial(self.slopes, predict), bounds=self.bounds,
             x_scale="jac", max_nfev=evaluations, ftol=1e-5, xtol=1e-9, gtol=1e-12,
         )  # fmt: skip
-        return _Run(found.x, float(found.cost), found.jac, found.status > 0, str(found.message))
+        low, high = self.bounds
+        close = 1e-6 * (high - low)  # an end that was only approached
+        ends = np.where(found.x - low < close, low, np.where(high - found.x < close, high, found.x))
+        return _Run(ends, float(found.cost), found.jac, found.status > 0, str(found.message))
 
 
 def _result(

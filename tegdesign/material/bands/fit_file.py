@@ -64,7 +64,7 @@ def bands_file(fit: Fit, name: str, doping_bounds: tuple[float, float] | None = 
         "parameters_basis": _basis(fit),
         "source": _source(fit),
         "uncertainty": _uncertainty(fit),
-        **fit.model.parts(values),
+        **fit.model.parts(values, digits=6),
     }
     try:
         return BandsFile.model_validate(data)

@@ -41,6 +41,9 @@ LATTICE = {
     "alloy": ("alloy", 1.0, False),
 }
 DISPERSION = ("parabolic", "kane")
+# Unit and bounds of a ratio of mobilities. Carriers that hardly move only hide or add others: a fit likes them where it
+# lacks another freedom, a crystal does not. Common practice, no source.
+_RATIO = ("", "", 0.02, 50.0)
 
 
 @dataclass(frozen=True)
@@ -172,18 +175,17 @@ class Model:
 
     def _parameters(self) -> Iterator[Parameter]:
         energy, power, adjusted = SCATTERING[self.scattering]
-        mobility = ("m^2/V/s", "cm^2/V/s", 1e-6, 50.0)
         at = f"at {REFERENCE:g} K"
         yield Parameter("doping", "1/m^3", "1/cm^3", 1e21, 1e30, 1e25, True, "majority carriers of the dopants")
         yield Parameter("mass", "", "", 0.01, 10.0, 1.0, False, f"density-of-states mass, all valleys, {at} [m_e]")
         yield Parameter("mass_exponent", "", "", -1.5, 1.5, 0.0, False, "power of T of all masses", 1.0)
-        yield Parameter("mobility", *mobility, 1e-2, True, f"at energy kT and {REFERENCE:g} K")
+        yield Parameter("mobility", "m^2/V/s", "cm^2/V/s", 1e-7, 50.0, 1e-2, True, f"at energy kT and {REFERENCE:g} K")
         words = "power of T of all mobilities, at energy kT"
         yield Parameter("mobility_exponent", "", "", -4.0, 4.0, power, adjusted, words, 1.0)
         yield Parameter("energy_exponent", "", "", -1.2, 2.0, energy, False, "power of the energy in tau", 1.0)
         if self.bands == 2:
             yield Parameter("second_mass_ratio", "", "", 0.1, 9.0, 3.0, True, "mass of the second band over mass")
-            yield Parameter("second_mobility", *mobility, 2e-3, True, f"second band, energy kT, {REFERENCE:g} K")
+            yield Parameter("second_mobility_ratio", *_RATIO, 0.2, True, "mobility of the second band over mobility")
             yield Parameter(
                 "second_offset", "J", "eV", 0.0, 1.5 * CHARGE, 0.1 * CHARGE, True, f"of the second band, {at}",
                 0.1 * CHARGE,
@@ -193,7 +195,8 @@ class Model:
             yield Parameter("gap", "J", "eV", 0.01 * CHARGE, 6 * CHARGE, 0.5 * CHARGE, True, at)
             yield _slope("gap_slope")
             yield Parameter("minority_mass_ratio", "", "", 0.1, 9.0, 1.0, False, "mass of the minority band over mass")
-            yield Parameter("minority_mobility", *mobility, 1e-2, True, f"at energy kT and {REFERENCE:g} K")
+            words = "mobility of the minority band over mobility"
+            yield Parameter("minority_mobility_ratio", *_RATIO, 1.0, True, words)
         elif self.dispersion == "kane":
             words = f"energy of Kane's dispersion {at}"
             yield Parameter("gap", "J", "eV", 0.01 * CHARGE, 6 * CHARGE, 0.5 * CHARGE, True, words)
@@ -210,20 +213,27 @@ class Model:
             yield Parameter("velocity", "m/s", "m/s", 300.0, 2e4, 2500.0, False, "of sound in the alloy")
             yield Parameter("atomic_volume", "m^3", "nm^3", 3e-30, 1e-27, 2.5e-29, False, "of the alloy")
 
-    def parts(self, values: Values) -> dict[str, Any]:
-        """Return ``gap``, ``bands`` and ``lattice`` of the file of kind bands that has these values [SI]."""
+    def parts(self, values: Values, digits: int = 17) -> dict[str, Any]:
+        """Return ``gap``, ``bands`` and ``lattice`` of the file of kind bands that has these values [SI].
+
+        ``digits`` are those of products of values; 17 are all.
+        """
+
+        def times(name: str, ratio: str) -> float:
+            return float(f"{values[name] * values[ratio]:.{digits}g}")
+
         majority, minority = ("electron", "hole") if self.polarity == "n" else ("hole", "electron")
         names = {"electron": "conduction", "hole": "valence"}
         gap = _law(values, "gap") if "gap" in values else None
         kane = gap if self.dispersion == "kane" else None
-        bands = [_band(values, names[majority], majority, 1.0, values["mobility"], None, kane)]
+        bands = [_band(values, names[majority], majority, values["mass"], values["mobility"], None, kane)]
         if self.bands == 2:
-            name, ratio = f"second {names[majority]}", values["second_mass_ratio"]
+            mass, mobility = times("mass", "second_mass_ratio"), times("mobility", "second_mobility_ratio")
             offset = _law(values, "second_offset")
-            bands.append(_band(values, name, majority, ratio, values["second_mobility"], offset, None))
+            bands.append(_band(values, f"second {names[majority]}", majority, mass, mobility, offset, None))
         if self.minority:
-            ratio, mobility = values["minority_mass_ratio"], values["minority_mobility"]
-            bands.append(_band(values, names[minority], minority, ratio, mobility, None, kane))
+            mass, mobility = times("mass", "minority_mass_ratio"), times("mobility", "minority_mobility_ratio")
+            bands.append(_band(values, names[minority], minority, mass, mobility, None, kane))
         return {"gap": gap if self.minority else None, "bands": tuple(bands), "lattice": self._lattice(values)}
 
     def _lattice(self, values: Values) -> Any:
@@ -270,7 +280,7 @@ class Prediction:
         return np.stack([response.seebeck_coefficient, 1 / response.conductivity, kappa])
 
 
-_MOBILITIES = {"mobility", "mobility_exponent", "energy_exponent", "second_mobility", "minority_mobility"}
+_MOBILITIES = {"mobility", "mobility_exponent", "energy_exponent", "second_mobility_ratio", "minority_mobility_ratio"}
 _OF_LATTICE = {"lattice", "lattice_exponent", "disorder", "debye_temperature", "velocity", "atomic_volume"}
 _KEPT = 4  # the point and a step or two from it
 
@@ -303,9 +313,9 @@ def _law(values: Values, name: str) -> Any:
 
 
 def _band(
-    values: Values, name: str, carrier: str, ratio: float, mobility: float, offset: Any, kane_gap: Any
+    values: Values, name: str, carrier: str, mass: float, mobility: float, offset: Any, kane_gap: Any
 ) -> BandEntry:
-    mass, exponent = values["mass"] * ratio, values["mass_exponent"]
+    exponent = values["mass_exponent"]
     scattering = {
         "kind": "mobility",
         "mobility": SI(mobility),

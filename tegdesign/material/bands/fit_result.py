@@ -243,7 +243,7 @@ class Fit:
                 "mass m multiply the doping by m^1.5, divide every mobility by it; hold mass or doping if one is known"
             )
         vague = [one.name for one in self.parameters if not one.held and not one.told]
-        if self.model.minority and {"gap", "minority_mobility"} & set(vague):
+        if self.model.minority and {"gap", "minority_mobility_ratio"} & set(vague):
             yield (
                 "the table hardly shows the minority band: leave it out, or hold the gap to a published value; at "
                 "other dopings its part is unproven"

@@ -15,7 +15,6 @@ from tegdesign.material.transport.constants import BOLTZMANN, CHARGE
 from tegdesign.material.transport.derived import level_from_seebeck
 
 _OFFSETS = (0.03, 0.12, 0.25)  # [eV] of a second band
-_MOBILITY_OF_SECOND = 0.2  # a second band is heavier, so slower
 _LEAST_LATTICE = 0.1  # share of kappa
 
 
@@ -32,16 +31,13 @@ def starts(model: Model, table: Material, held: Mapping[str, float]) -> list[dic
     choices: dict[str, list[float]] = {}
     if "gap" in base and "gap" not in held:
         choices["gap"] = _gaps(model, table)
-    if model.minority and "minority_mobility" not in held:
-        choices["minority_mobility"] = [1.0, 0.2]  # of that of the majority
+    if model.minority and "minority_mobility_ratio" not in held:
+        choices["minority_mobility_ratio"] = [1.0, 0.2]
     if model.bands == 2 and "second_offset" not in held:
         choices["second_offset"] = [offset * CHARGE for offset in _OFFSETS]
     found = []
     for chosen in product(*choices.values()):
         values = base | dict(zip(choices, chosen, strict=True))
-        for name, share in (("minority_mobility", values.get("minority_mobility")), ("second_mobility", None)):
-            if name in values and name not in held:
-                values[name] = values["mobility"] * (_MOBILITY_OF_SECOND if share is None else share)
         scaled = _scaled(model, table, values, held)
         found.append({name: min(max(value, parameters[name].low), parameters[name].high)
                       for name, value in scaled.items()})  # fmt: skip
@@ -84,14 +80,11 @@ def _gaps(model: Model, table: Material) -> list[float]:
 
 
 def _scaled(model: Model, table: Material, values: dict[str, float], held: Mapping[str, float]) -> dict[str, float]:
-    """Return the values with mobilities and lattice changed so that cold rho and kappa are met."""
+    """Return the values with mobility and lattice changed so that cold rho and kappa are met."""
     t = _cold(table.resistivity.temperature)
     _, rho, _ = Prediction(model, t)(values)
     factor = float(np.exp(np.median(np.log(rho / table.resistivity(t)))))
-    changed = {
-        name: value * factor if name.endswith("mobility") and name not in held else value
-        for name, value in values.items()
-    }
+    changed = values if "mobility" in held else values | {"mobility": values["mobility"] * factor}
     if "lattice" in held:
         return changed
     t = _cold(table.thermal_conductivity.temperature)
