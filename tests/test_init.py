@@ -34,6 +34,8 @@ TWINS = {
     "compare": "compare",
     "sheet": "write_sheet",
     "materials": "materials",
+    "rows": "rows",
+    "array": "array",
 }
 
 

@@ -20,7 +20,7 @@ COMMANDS = {
     "rate": "Rate a given design: report, operating table, curves, maps.",
     "compare": "Rank pairs of materials for a brief.",
     "rows": "Stand the module of a design in rows along its source stream.",
-    "array": "Join modules at unequal temperatures: mismatch, faults, connections.",
+    "array": "Join unequal modules: mismatch, faults, connections.",
     "sheet": "Write the design sheet of a given design, PDF or Markdown.",
     "materials": "List, show and check thermoelectric materials.",
 }

@@ -29,6 +29,10 @@ def rate(
     curve: Annotated[
         bool, typer.Option("--curve", help="V-I and P-I from open towards short circuit.")
     ] = False,
+    ranges: Annotated[
+        bool,
+        typer.Option("--ranges", help="Power and voltage over what differs between the states: source, flow, film."),
+    ] = False,
     over: Annotated[
         list[str] | None,
         typer.Option(
@@ -39,7 +43,11 @@ def rate(
     ] = None,
     of: Annotated[str, typer.Option(metavar="QUANTITY", help="Quantity shown in a map.")] = "power_W",
     figure: Annotated[
-        Path | None, typer.Option(metavar="FILE", help="Draw the curve or map: .png, .pdf or .svg.")
+        Path | None,
+        typer.Option(
+            metavar="FILE",
+            help="Draw the curve, ranges or map, else the temperatures of all states: .png, .pdf or .svg.",
+        ),
     ] = None,
     json: output.JsonOption = False,
     csv: output.CsvOption = False,
@@ -52,19 +60,24 @@ def rate(
     \b
     Examples:
       tegdesign rate plate.toml
+      tegdesign rate plate.toml --figure ladders.png
       tegdesign rate plate.toml --hot "150 degC, 200 degC" --load "matched, 3 ohm"
       tegdesign rate plate.toml --curve --csv -o curve.csv
+      tegdesign rate plate.toml --ranges --figure ranges.png
       tegdesign rate plate.toml --map "module.leg_length=1 mm, 2 mm, 3 mm" --of efficiency
     """
     form = output.style(json, csv)
     table = bool(hot or cold or load or current)
-    if table + curve + bool(over) > 1:
-        raise typer.BadParameter("give temperatures and loads, or --curve, or --map; one at a time")
-    if figure is not None and not (curve or over):
-        raise typer.BadParameter("--figure goes with --curve or --map")
+    if table + curve + ranges + bool(over) > 1:
+        raise typer.BadParameter("give temperatures and loads, or --curve, or --ranges, or --map; one at a time")
+    if figure is not None and table:
+        raise typer.BadParameter("--figure goes with --curve, --ranges or --map, or with no temperatures and loads")
     output.check_places(design, figure, to)
+    if ranges:
+        _ranges(design, form, figure, to)
+        return
     if not (table or curve or over):
-        _report(design, form, to)
+        _report(design, form, figure, to)
         return
     from tegdesign.design.design import read_design
     from tegdesign.design.scan import curve as curve_of
@@ -94,11 +107,15 @@ def rate(
         raise typer.Exit(1)
 
 
-def _report(design: Path, form: output.Style, to: Path | None) -> None:
+def _report(design: Path, form: output.Style, figure: Path | None, to: Path | None) -> None:
     from tegdesign.design.rate import rate as rate_design
     from tegdesign.sheet.text import rating_report
 
     rating = rate_design(design)
+    if figure is not None:
+        from tegdesign.sheet.ladders import draw_ladders
+
+        draw_ladders(rating, figure)
     if form == "json":
         output.emit(output.json_text(rating.to_dict()), to)
     elif form == "csv":
@@ -107,6 +124,25 @@ def _report(design: Path, form: output.Style, to: Path | None) -> None:
     else:
         output.emit(rating_report(rating), to)
     if not rating.met:
+        raise typer.Exit(1)
+
+
+def _ranges(design: Path, form: output.Style, figure: Path | None, to: Path | None) -> None:
+    from tegdesign.design.ranges import ranges
+    from tegdesign.design.rate import rate as rate_design
+    from tegdesign.sheet.ranges import draw_ranges, ranges_table
+
+    found = ranges(rate_design(design))
+    if figure is not None:
+        draw_ranges(found, figure)
+    rows = found.rows()
+    if form == "json":
+        output.emit(output.json_text(found.to_dict()), to)
+    elif form == "csv":
+        output.emit(output.csv_text(list(rows[0]), [list(row.values()) for row in rows]), to)
+    else:
+        output.emit(ranges_table(found), to)
+    if not found.rating.met:
         raise typer.Exit(1)
 
 

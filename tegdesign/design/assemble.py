@@ -68,8 +68,11 @@ def made_of(found: Material, made: Made, polarity: str, tolerance: float = 1e-8)
     return whole.made(doping, made.grain_size, tolerance)
 
 
-def stack_values(stack: Stack, losses: Losses) -> dict[str, float]:
-    """Return the members of ``Modules`` that come from the stack, with losses switched off where asked."""
+def stack_values(stack: Stack, losses: Losses, turned: bool = False) -> dict[str, float]:
+    """Return the members of ``Modules`` that come from the stack, with losses switched off where asked.
+
+    ``turned`` swaps its hot and cold side, for a state in which heat goes the other way.
+    """
     conductivity, exponent, transparent = stack.filler_law
     rays = losses.radiation and losses.bypass and transparent
     values: dict[str, float] = {
@@ -82,21 +85,26 @@ def stack_values(stack: Stack, losses: Losses) -> dict[str, float]:
         "electrode_conductivity": stack.electrode_conductivity,
         "filler_conductivity": conductivity * losses.bypass,
         "filler_exponent": exponent,
-        "emittance_hot": stack.emittance_hot * rays,
-        "emittance_cold": stack.emittance_cold * rays,
+        "emittance_hot": (stack.emittance_cold if turned else stack.emittance_hot) * rays,
+        "emittance_cold": (stack.emittance_hot if turned else stack.emittance_cold) * rays,
         "edge_conductance": stack.bridges * losses.bypass,
         "lead_resistance": stack.lead_resistance * losses.leads,
         "spreading": float(losses.spreading and losses.substrates),
     }
-    for side, plate in (("hot", stack.hot), ("cold", stack.cold)):
+    plates = (stack.cold, stack.hot) if turned else (stack.hot, stack.cold)
+    for side, plate in zip(("hot", "cold"), plates, strict=True):
         values[f"interface_{side}"] = plate.interface * losses.interfaces
         values[f"substrate_thickness_{side}"] = plate.substrate_thickness * losses.substrates
         values[f"substrate_conductivity_{side}"] = plate.substrate_conductivity
     return values
 
 
-def modules_of(designs: Sequence[Design], losses: Sequence[Losses] | None = None) -> Modules:
+def modules_of(
+    designs: Sequence[Design], losses: Sequence[Losses] | None = None, turned: Sequence[bool] | None = None
+) -> Modules:
     """Return designs of one pair of materials as a batch, each with its own or with the given loss switches.
+
+    ``turned`` tells which stand with hot and cold side swapped.
 
     Raises
     ------
@@ -108,7 +116,11 @@ def modules_of(designs: Sequence[Design], losses: Sequence[Losses] | None = None
         raise InputError("materials differ between the designs of one table; rate them one by one")
     pair = [material(*leg, chosen.folder, make) for leg, make in chosen.legs]
     switches = losses or [d.losses for d in designs]
-    rows = [{**stack_values(d.stack, off), **_geometry(d)} for d, off in zip(designs, switches, strict=True)]
+    sides = turned or [False] * len(designs)
+    rows = [
+        {**stack_values(d.stack, off, swap), **_geometry(d)}
+        for d, off, swap in zip(designs, switches, sides, strict=True)
+    ]
     columns: dict[str, Any] = {name: np.array([row[name] for row in rows], dtype=float) for name in rows[0]}
     size = len(rows)
     return Modules(pair, np.zeros(size, dtype=np.intp), np.ones(size, dtype=np.intp), **columns)

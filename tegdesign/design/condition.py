@@ -45,6 +45,9 @@ class Condition:
         Whether the short-time limits apply.
     of : str
         Name of the loaded state of which this is the open circuit or the start; empty otherwise.
+    reversed : bool
+        The sink of the brief is the hotter side, and stands here as the source: heat goes the other way through the
+        module, and voltage and current have the other sign.
     """
 
     name: str
@@ -54,6 +57,7 @@ class Condition:
     held: frozenset[str] = frozenset()
     short_time: bool = False
     of: str = ""
+    reversed: bool = False
 
     @property
     def opened(self) -> str:
@@ -69,10 +73,11 @@ class Condition:
 def with_open_circuit(loaded: Condition) -> tuple[Condition, ...]:
     """Return a loaded state, its open circuit, and its start where the load has one."""
     source, sink, short_time = loaded.source, loaded.sink, loaded.short_time
-    opened = Condition(loaded.opened, source, sink, OPEN, frozenset(), short_time, loaded.name)
+    back = loaded.reversed
+    opened = Condition(loaded.opened, source, sink, OPEN, frozenset(), short_time, loaded.name, back)
     if not has_start(loaded.load):
         return loaded, opened
-    start = Condition(loaded.start, source, sink, Starting(loaded.load), frozenset(), short_time, loaded.name)
+    start = Condition(loaded.start, source, sink, Starting(loaded.load), frozenset(), short_time, loaded.name, back)
     return loaded, opened, start
 
 

@@ -85,11 +85,18 @@ class Candidates:
         return self.series * self.parallel
 
     def batch(self, job: Job) -> Modules:
-        """Return the modules as a batch for the solver."""
-        geometry = {
-            f.name: getattr(self, f.name) for f in fields(self) if f.name not in ("series", "parallel")
-        }
-        return Modules(job.materials, **geometry, **dict[str, Any](stack_values(job.stack, job.losses)))
+        """Return the modules as a batch for the solver, (states x B,)."""
+        geometry = {f.name: getattr(self, f.name) for f in fields(self) if f.name not in ("series", "parallel")}
+        values: dict[str, Any] = dict(stack_values(job.stack, job.losses))
+        whole = Modules(job.materials, **geometry, **values).tile(len(job.states))
+        if not any(state.reversed for state in job.states):
+            return whole
+        turned = np.repeat([state.reversed for state in job.states], self.n.size)
+        swapped = stack_values(job.stack, job.losses, turned=True)
+        both = {k: np.where(turned, swapped[k], v) for k, v in values.items() if swapped[k] != v}
+        return Modules(
+            job.materials, **{k: np.tile(v, len(job.states)) for k, v in geometry.items()}, **(values | both)
+        )
 
 
 class Guess(NamedTuple):
@@ -246,7 +253,7 @@ def evaluate(
         hot, cold, scaled = (np.where(np.isfinite(v), v, other) for v, other in if_unknown)
         start = hot.ravel(), cold.ravel(), (scaled * candidates.side_n**2 / candidates.leg_length).ravel()
     point = operating_point(
-        candidates.batch(job).tile(len(states)),
+        candidates.batch(job),
         join([state.source.law(candidates.footprint, count) for state in states]),
         join([state.sink.law(candidates.footprint, count) for state in states]),
         mixed([state.load.law(candidates.series, candidates.parallel) for state in states]),

@@ -82,8 +82,8 @@ def _sides(e: Evaluation, state: Condition, point: OperatingPoint) -> Iterator[L
     c, flux = e.candidates, e.job.require.heat_flux
     ones = np.ones(c.n.size)
     sides: tuple[tuple[str, AnyBoundary, Array], ...] = (
-        ("source", state.source, point.heat_in * c.modules),
-        ("sink", state.sink, -point.heat_out * c.modules),
+        ("sink" if state.reversed else "source", state.source, point.heat_in * c.modules),
+        ("source" if state.reversed else "sink", state.sink, -point.heat_out * c.modules),
     )
     for side, boundary, heat in sides:
         outcomes = boundary.outcomes(heat)

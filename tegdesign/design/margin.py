@@ -1,4 +1,4 @@
-"""How far a design is from failing: break-even of every state, windows of its dimensions, limits that exclude others."""
+"""How far a design is from failing: break-even of every state, windows of dimensions, limits that exclude others."""
 
 from __future__ import annotations
 
@@ -8,6 +8,7 @@ from typing import Literal, NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
+from tegdesign.design.condition import OPEN, SHORT
 from tegdesign.design.evaluate import Evaluation
 from tegdesign.design.margin_result import BreakEven, End, Margins, Mend, Window
 from tegdesign.design.seek import BROKEN, Bracket, Scan, present, refine, scan
@@ -15,7 +16,6 @@ from tegdesign.design.variables import (
     DIFFERENCE,
     FILM,
     FLOW,
-    HEAT,
     HOTTEST,
     PARALLEL,
     SERIES,
@@ -57,6 +57,12 @@ class _Shape(NamedTuple):
     mended: str  # name of the limits that shall hold; empty for what holds now
 
 
+def _finer(ratios: Array) -> Array:
+    """Return ratios with two more before each, evenly in their logarithms."""
+    logs = np.log(np.concatenate([[1.0], ratios]))
+    return np.asarray(np.exp(np.interp(np.arange(1, 3 * ratios.size + 1) / 3, np.arange(ratios.size + 1), logs)))
+
+
 def margins(evaluation: Evaluation) -> Margins:
     """Return how far a design is from failing.
 
@@ -78,6 +84,11 @@ class _Search:
         self.hard = np.array([limit.hard for limit in self.limits])
         self.data = np.array(["data point" in limit.key for limit in self.limits])
         self.power = np.array([limit.key == POWER for limit in self.limits])
+
+    @property
+    def _failing(self) -> list[str]:
+        """Names of the limits that are missed now."""
+        return sorted({limit.key for limit, held in zip(self.limits, self.holds, strict=True) if not held})
 
     def margins(self) -> Margins:
         asks, variables = list(self._asks()), self._shapes()
@@ -122,7 +133,7 @@ class _Search:
         self, variable: Variable, group: int, purpose: str, which: NDArray[np.bool_], failing: Direction,
         stops: Rows | None = None,
     ) -> _Ask:  # fmt: skip
-        """Return where limits break, or where they hold again if some are broken now; ``failing`` is the way they go."""
+        """Return where limits break, or hold again if some are broken now; ``failing`` is the way they break."""
         broken = which & ~self.holds
         leaving = not broken.any()
         back: Direction = "up" if failing == "down" else "down"
@@ -133,7 +144,10 @@ class _Search:
     def _ratios(self, variable: Variable, direction: Direction) -> Array:
         """Return the ratios to look at (groups, columns)."""
         groups = self.varying.groups
-        ratios = np.tile(variable.ratios(self.varying.base.candidates, direction), (len(groups), 1))
+        plain = variable.ratios(self.varying.base.candidates, direction)
+        if variable.side == "shape" and not variable.whole and plain.size and not self.holds.all():
+            plain = _finer(plain)  # what would mend a limit may lie on a narrow summit
+        ratios = np.tile(plain, (len(groups), 1))
         if variable is not DIFFERENCE:
             return ratios
         sinks = [state.sink.reference_temperature for state in groups]
@@ -154,7 +168,10 @@ class _Search:
         ended = stop is not None and (asked is None or abs(stop.place - 1) < abs(asked.place - 1))
         bracket = stop if ended else asked
         ratio, limit, state = float(ratios[-1]), "", ""
-        if bracket is not None:
+        outside = np.flatnonzero(self.data & ~self.holds & (self.group == ask.group))
+        if ask.purpose == POWER and outside.size:  # what is held outside its data now is not carried on
+            ratio, limit, state, ended = 1.0, self.limits[outside[0]].key, self.limits[outside[0]].state, True
+        elif bracket is not None:
             ratio, limit, state = self._told(bracket)
         names = ask.variable.name, ask.variable.key, ask.variable.unit
         now = self.varying.now(ask.variable, ask.group)
@@ -186,7 +203,8 @@ class _Search:
     def _shapes(self) -> list[Variable]:
         """Return the dimensions to look at; how modules are joined only where that makes a difference."""
         c, job = self.varying.base.candidates, self.varying.base.job
-        volts = any(limit.unit == "V" for limit in self.limits) or not all(s.load.adapts for s in job.states if not s.of)
+        adapting = all(state.load.adapts for state in job.states if not state.of and state.load not in (OPEN, SHORT))
+        volts = any(limit.unit == "V" for limit in self.limits) or not adapting
         left_out = set()
         if not volts:
             left_out.add(PARALLEL if c.series[0] > 1 or c.parallel[0] == 1 else SERIES)
@@ -194,15 +212,15 @@ class _Search:
 
     def _shape_brackets(self, scans: Scans) -> dict[_Shape, Bracket]:
         """Return where what holds begins to break along each dimension, and where what is missed begins to hold."""
-        failing = {limit.key for limit, held in zip(self.limits, self.holds, strict=True) if not held}
-        held, found = np.flatnonzero(self.holds), {}
+        held = np.flatnonzero(self.holds)
+        found: dict[_Shape, Bracket] = {}
         for (variable, direction), along in scans.items():
             if variable.side != "shape":
                 continue
             searches = [("", held, True)] if held.size else []
-            for key in sorted(failing):
-                rows = [k for k, limit in enumerate(self.limits) if limit.key == key and not self.holds[k]]
-                searches.append((key, np.array(rows, dtype=np.intp), False))
+            for key in self._failing:
+                own = np.array([limit.key == key for limit in self.limits])
+                searches.append((key, np.flatnonzero(own & ~self.holds), False))
             for name, rows, leaving in searches:
                 bracket = along.bracket(rows, leaving, self.present, self.start)
                 if bracket is not None:
@@ -212,7 +230,8 @@ class _Search:
     def _window(self, scans: Scans, shapes: Mapping[_Shape, Bracket], variable: Variable) -> Window:
         now = self.varying.now(variable)
         assert now is not None
-        low, high = (self._end(scans, shapes, variable, d, now) for d in ("down", "up"))  # type: ignore[arg-type]
+        low = self._end(scans, shapes, variable, "down", now)
+        high = self._end(scans, shapes, variable, "up", now)
         return Window(variable.name, variable.key, variable.unit, now, low, high)
 
     def _end(
@@ -225,11 +244,12 @@ class _Search:
         if (variable, direction) not in scans:
             return End(now, variable.end if direction == "up" else "", "")
         ratio = float(scans[variable, direction].ratios[0, -1])
-        natural = direction == "up" and ratio == variable.most(self.varying.base.candidates)
+        most = variable.most(self.varying.base.candidates)
+        natural = direction == "up" and abs(ratio / most - 1) < 1e-9
         return End(ratio * now, variable.end if natural else "", "")
 
     def _mends(self, shapes: Mapping[_Shape, Bracket]) -> Iterator[Mend]:
-        """Yield for every limit that is missed the places where it would hold, with what breaks or stays missed there."""
+        """Yield for every limit that is missed where it would hold, with what breaks on the way or stays missed."""
         for shape, bracket in shapes.items():
             if not shape.mended:
                 continue
@@ -238,9 +258,14 @@ class _Search:
             ratio, limit, state = self._told(bracket)
             sense = "most" if shape.direction == "down" else "least"
             v = shape.variable
-            yield Mend(
-                limit, state, v.name, v.key, v.unit, now, sense, ratio * now, self._against(shapes, shape, ratio, now)
-            )
+            others = (shape._replace(mended=key) for key in self._failing)
+            still = tuple(other.mended for other in others if not self._mended_by(shapes, other, ratio))
+            against = self._against(shapes, shape, ratio, now)
+            yield Mend(limit, state, v.name, v.key, v.unit, now, sense, ratio * now, against, still)
+
+    def _mended_by(self, shapes: Mapping[_Shape, Bracket], shape: _Shape, ratio: float) -> bool:
+        """Tell whether the limits of a search hold from a ratio on."""
+        return shape in shapes and abs(shapes[shape].place - 1) <= abs(ratio - 1) + 1e-9
 
     def _against(self, shapes: Mapping[_Shape, Bracket], shape: _Shape, ratio: float, now: float) -> End | None:
         """Return what breaks on the way to a mend, or what else is missed and needs the other way; None if nothing."""

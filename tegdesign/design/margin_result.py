@@ -100,7 +100,8 @@ class Window:
 class Mend:
     """What would mend a limit that is missed: a variable and the value it needs, and what breaks before that, if any.
 
-    ``sense`` tells whether ``value`` is the least or the most that will do.
+    ``sense`` tells whether ``value`` is the least or the most that will do; ``still_missed`` names the other limits
+    that are missed now and there as well.
     """
 
     limit: str
@@ -112,6 +113,7 @@ class Mend:
     sense: str
     value: float
     against: End | None
+    still_missed: tuple[str, ...]
 
     def to_dict(self) -> dict[str, Any]:
         """Return plain values; keys end in their unit."""
@@ -125,6 +127,7 @@ class Mend:
             f"now_{self.key}": self.now,
             f"just_met_at_{self.key}": self.value,
             "excluded_by": against,
+            "still_missed": list(self.still_missed),
         }
 
 

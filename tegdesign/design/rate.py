@@ -181,7 +181,7 @@ def _data(states: Sequence[State], pair: tuple[Material, Material]) -> Iterator[
 
 
 def _conduction(pair: tuple[Material, Material], rated: State) -> Iterator[Conduction]:
-    """Yield the mean thermal conductivity of each leg over its temperatures, and what carriers and lattice have in it."""
+    """Yield the mean thermal conductivity of each leg over its temperatures, that of carriers and lattice apart."""
     cold, hot = rated.T_cold_junction_K, rated.T_hot_junction_K
     x, w = np.polynomial.legendre.leggauss(_NODES)
     t = (hot + cold) / 2 + x * (hot - cold) / 2

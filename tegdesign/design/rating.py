@@ -219,7 +219,7 @@ class Rating:
 
     @cached_property
     def conditions(self) -> tuple[Condition, ...]:
-        """Conditions of every state that is asked for: the rated one, the named ones, their open circuits and starts."""
+        """Conditions of every state that is asked for: rated and named ones, each with its open circuit and start."""
         return self.design.conditions
 
     @property

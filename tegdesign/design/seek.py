@@ -132,6 +132,12 @@ class Scan:
         return None
 
 
+def along(varying: Varying, variable: Variable, ratios: Array) -> Evaluation:
+    """Return one variable over ratios (groups, columns), solved."""
+    look = Look(variable, ratios)
+    return varying.solve([look], Guess(*_from_present(varying, look)))
+
+
 def scan(varying: Varying, wanted: Sequence[tuple[Variable, Array]]) -> list[Scan]:
     """Return scans of variables over ratios (groups, columns), solved in one rough batch."""
     if not wanted:

@@ -31,11 +31,12 @@ class Ask:
     load: Any  # AnyLoad or Starting
     losses: Losses
     required: bool = True  # raise if it is not found; otherwise leave it out with a note
+    reversed: bool = False  # what stands as the source is the sink of the design, and the plates are swapped
 
     @classmethod
     def of(cls, condition: Condition, losses: Losses) -> Ask:
         """Return a required state of these conditions."""
-        return cls(condition.name, condition.source, condition.sink, condition.load, losses)
+        return cls(condition.name, condition.source, condition.sink, condition.load, losses, reversed=condition.reversed)
 
 
 def solve(design: Design, asks: Sequence[Ask]) -> tuple[Modules, OperatingPoint]:
@@ -57,7 +58,7 @@ def solve_all(designs: Sequence[Design], asks: Sequence[Ask]) -> tuple[Modules, 
     ConvergenceError
         A required state has no operating point.
     """
-    modules = modules_of(designs, [ask.losses for ask in asks])
+    modules = modules_of(designs, [ask.losses for ask in asks], [ask.reversed for ask in asks])
     areas, counts, series, parallel = (
         [np.array([float(v)]) for v in column]
         for column in zip(
@@ -90,19 +91,20 @@ def state_of(design: Design, ask: Ask, modules: Modules, point: OperatingPoint, 
     g, m = design.module, modules.take([k])
     ratio = g.modules_in_series / g.modules_in_parallel
     current = float(point.current[k]) * g.modules_in_parallel
+    sign = -1.0 if ask.reversed else 1.0
     voltage = float(point.voltage[k]) * g.modules_in_series
     module_current = float(point.current[k])
     contacts = 2 * float(m.contacts[0]) * ratio
     leads = float(np.asarray(m.lead_resistance)[0])
     return State(
         name=ask.name,
-        conditions=f"{ask.load.words()}; source {ask.source.words()}; sink {ask.sink.words()}; steady",
+        conditions=f"{'reversed, the sink is the hotter side: ' * ask.reversed}{ask.load.words()}; source {ask.source.words()}; sink {ask.sink.words()}; steady",
         power_W=voltage * current,
         delivered_power_W=voltage * current,
-        voltage_V=voltage,
-        current_A=current,
+        voltage_V=sign * voltage,
+        current_A=sign * current,
         load_resistance_ohm=_load_resistance(ask.load, voltage, current),
-        open_circuit_voltage_V=float(point.open_voltage[k]) * g.modules_in_series,
+        open_circuit_voltage_V=sign * float(point.open_voltage[k]) * g.modules_in_series,
         internal_resistance_ohm=float(point.internal_resistance[k]) * ratio,
         efficiency=float(point.efficiency[k]),
         efficiency_of_given_heat=voltage * current / given if (given := ask.source.given_heat) else None,
@@ -136,10 +138,11 @@ def _load_resistance(load: AnyLoad, voltage: float, current: float) -> float | N
 def _ladder(ask: Ask, m: Modules, point: OperatingPoint, k: int, count: int) -> Iterator[Rung]:
     """Yield places from the source to the sink with the fall of temperature before each."""
     places: list[tuple[str, float]] = []
+    hot_side, cold_side = ("sink", "source") if ask.reversed else ("source", "sink")
     heat_in, heat_out = float(point.heat_in[k]), float(point.heat_out[k])
     face, area = np.array([point.hot_face[k]]), np.asarray(m.footprint) * count
     for place, value in ask.source.stations(face, np.array([heat_in * count]), area):
-        places.append((f"source {place}", float(value[0])))
+        places.append((f"{hot_side} {place}", float(value[0])))
     t = float(point.hot_face[k])
     places.append(("hot face", t))
     parts = m.thermal_parts("hot")
@@ -154,7 +157,7 @@ def _ladder(ask: Ask, m: Modules, point: OperatingPoint, k: int, count: int) -> 
     for place, value in reversed(
         ask.sink.stations(np.array([point.cold_face[k]]), np.array([-heat_out * count]), area)
     ):
-        places.append((f"sink {place}", float(value[0])))
+        places.append((f"{cold_side} {place}", float(value[0])))
     previous = places[0][1]
     for place, t in places:
         yield Rung(place, t, previous - t)

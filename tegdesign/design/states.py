@@ -35,7 +35,8 @@ class StateEntry(Part):
     ``source``, ``sink`` and ``load`` are tables of the keys that change; with another ``kind`` the table stands for
     itself. ``load`` may also be the word ``open`` or ``short``. Limits (temperatures, heat flux, outlet, voltage at
     open circuit) hold in every state; power, efficiency and voltage in ``holds``, which is all of them by default and
-    none where the load is open or short. A state with a ``duration`` is held to the short-time limits.
+    none where the load is open or short. A state with a ``duration`` is held to the short-time limits. Where the sink
+    is the hotter side the state is reversed: the voltage has the other sign, and loads that block it stay open.
     """
 
     name: Annotated[str, Field(min_length=1, max_length=40)]
@@ -86,11 +87,22 @@ def _conditions(
     for state in states:
         sides = _changed(source, sink, load, state)
         fed: Any = LOADS_LOST[state.load] if isinstance(state.load, str) else sides.load
-        loaded = Condition(state.name, sides.source, sides.sink, fed, state.held, state.duration is not None)
+        hot, cold, back = sides.source, sides.sink, _is_reversed(sides)
+        if back:
+            hot, cold = cold, hot
+            fed = fed if fed.both_ways else OPEN
+        loaded = Condition(state.name, hot, cold, fed, state.held, state.duration is not None, "", back)
         if {loaded.name, loaded.opened, loaded.start} & names:
             raise ValueError(f"state '{state.name}': the name is taken; choose another")
         names |= {loaded.name, loaded.opened, loaded.start}
         yield from (loaded,) if state.load == "open" else with_open_circuit(loaded)
+
+
+def _is_reversed(sides: _Sides) -> bool:
+    """Tell whether the sink is the hotter side, so that heat goes the other way and the voltage turns round."""
+    if sides.source.given_heat is not None or sides.sink.given_heat is not None:
+        return False
+    return sides.source.reference_temperature < sides.sink.reference_temperature
 
 
 def _changed(source: AnyBoundary, sink: AnyBoundary, load: AnyLoad, state: StateEntry) -> _Sides:

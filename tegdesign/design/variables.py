@@ -36,7 +36,7 @@ class Variable:
     down: tuple[float, ...]
     up: tuple[float, ...]
     changed: Callable[[Any, Condition, float], Any] = lambda boundary, state, ratio: boundary
-    shaped: Callable[[Candidates, Array], dict[str, Array]] = lambda c, ratio: {}
+    shaped: Callable[[Candidates, Array], dict[str, Any]] = lambda c, ratio: {}
     whole: bool = False  # counts: only whole numbers are looked at
     end: str = ""  # what ends the search below ``up`` where the variable has a natural end
     most: Callable[[Candidates], float] = lambda c: np.inf  # ratio of that end
@@ -79,17 +79,19 @@ _LEG_DOWN, _LEG_UP = (0.88, 0.7, 0.5, 0.3, 0.12), (1.14, 1.45, 2.0, 3.5, 8.0)
 _SIDE_DOWN, _SIDE_UP = (0.88, 0.7, 0.5, 0.3), (1.14, 1.45, 2.0, 3.3)
 _COUPLES_DOWN, _COUPLES_UP = (0.88, 0.7, 0.45, 0.2), (1.14, 1.45, 2.2, 5.0)
 
-DIFFERENCE = Variable("temperature difference", "temperature_difference_K", "K", "source", _difference, _DOWN, _UP, _moved)
+DIFFERENCE = Variable(
+    "temperature difference", "temperature_difference_K", "K", "source", _difference, _DOWN, _UP, _moved
+)
 HEAT = Variable(
-    "heat of the source", "source_heat_W", "W", "source", lambda state, c: state.source.given_heat, _DOWN, _UP,
+    "source heat", "source_heat_W", "W", "source", lambda state, c: state.source.given_heat, _DOWN, _UP,
     lambda source, state, ratio: source.scaled(ratio),
 )  # fmt: skip
 FLOW = Variable(
-    "flow of the source", "source_mass_flow_kg_per_s", "kg/s", "source",
+    "source flow", "source_mass_flow_kg_per_s", "kg/s", "source",
     lambda state, c: _number("mass_flow", state.source), _FAR_DOWN, _FAR_UP, _scaled("mass_flow"),
 )  # fmt: skip
 FILM = Variable(
-    "film of the sink", "sink_coefficient_W_per_m2_K", "W/m^2/K", "sink",
+    "sink film", "sink_coefficient_W_per_m2_K", "W/m^2/K", "sink",
     lambda state, c: _number("coefficient", state.sink), _FAR_DOWN, _FAR_UP, _scaled("coefficient"),
 )  # fmt: skip
 SIDES = (DIFFERENCE, HEAT, FLOW, FILM)
@@ -101,13 +103,15 @@ LENGTH = Variable(
 SIDE = Variable(
     "leg side at the same fill (n leg)", "leg_side_n_at_same_fill_m", "m", "shape", lambda state, c: float(c.side_n[0]),
     _SIDE_DOWN, _SIDE_UP,
-    shaped=lambda c, r: {"side_n": c.side_n * r, "side_p": c.side_p * r, "pitch": c.pitch * r, "couples": c.couples / r**2},
+    shaped=lambda c, r: {
+        "side_n": c.side_n * r, "side_p": c.side_p * r, "pitch": c.pitch * r, "couples": c.couples / r**2
+    },
 )  # fmt: skip
 COUPLES = Variable(
     "couples of a module, legs and plate the same", "couples", "1", "shape", lambda state, c: float(c.couples[0]),
     _COUPLES_DOWN, _COUPLES_UP,
     shaped=lambda c, r: {"couples": c.couples * r, "pitch": c.pitch / np.sqrt(r)},
-    end="legs that touch",
+    end="legs touch",
     most=lambda c: _TOUCH * float((c.pitch / np.maximum(c.side_n, c.side_p))[0]) ** 2,
 )  # fmt: skip
 SERIES = Variable(
@@ -152,7 +156,7 @@ class _Varied:
 
 @dataclass(frozen=True)
 class Look:
-    """Variations of one variable: ratios (groups, columns), each group of states with its own; a shape has one for all."""
+    """Variations of one variable: ratios (groups, columns), each group with its own; a shape has one for all."""
 
     variable: Variable
     ratios: Array

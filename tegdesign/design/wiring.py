@@ -121,9 +121,11 @@ class Wiring:
                 )
         told = []
         for side, name, asked in (("source", "hot", hot), ("sink", "cold", cold)):
-            stream = "before its row, in rows of one module with matched loads"
-            told.append(f"{side} {'as asked for' if asked else stream if name in along else 'of the design'}")
-        self.words = ", ".join(told)
+            told.append(
+                f"{side} {'as asked for' if asked else 'along its stream' if name in along else 'of the design'}"
+            )
+        followed = any(name in along and not asked for name, asked in (("hot", hot), ("cold", cold)))
+        self.words = ", ".join(told) + (" (rows of one module with matched loads)" if followed else "")
         warm = [self._law(design.source, t) for t in self.hot] if given is None else [self._heat(1.0)] * count
         chilled = [self._law(design.source, t) for t in self.cold] if given is None else [self._heat(0.0)] * count
         self.source = join([*warm, *chilled])  # those of cold modules behind all others

@@ -98,7 +98,7 @@ def _connections(r: ArrayRating) -> Section:
         told = ("-" if v is None else number(v) for v in (c.power_W, c.voltage_V, c.open_circuit_voltage_V))
         verdict = "keeps it" if c.keeps_window else f"misses: {c.words}" if window else c.words or "not asked for"
         rows.append((f"{c.series}", f"{c.parallel}", *told, verdict))
-    heads = ("in series", "in parallel", "P [W]", "V [V]", "open [V]", "voltage window")
+    heads = ("series", "parallel", "P [W]", "V [V]", "open [V]", "voltage window")
     return section("Other connections of the same modules", table(heads, rows, (5,)))
 
 

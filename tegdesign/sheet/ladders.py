@@ -29,8 +29,8 @@ MARKS: dict[str, dict[str, Any]] = {
     "sink": {"marker": "|", "markersize": 8, "markeredgewidth": 2.0},
 }
 EXPLAINED = (
-    "Each row is a state: source, hot face and hot junction on its upper line, cold junction, cold face and sink on its "
-    "lower one; dashed the open circuit. Shaded: where a joint would be beyond its nearest limit."
+    "Each row is a state: source, hot face and hot junction on its upper line, cold junction, cold face and sink on "
+    "its lower one; dashed the open circuit. Shaded: where a joint would be beyond its nearest limit."
 )
 
 
@@ -43,8 +43,7 @@ def ladders(rating: Rating, axes: Axes) -> None:
         if c.load is not OPEN:
             _mark(axes, "junctions, open circuit", _joints(opened), row, linestyle="--", color="0.4")
         _ladder(state, row, axes)
-    names = [plain("\n".join(textwrap.wrap(c.name, 20)[:2])) if len(c.name) <= 20 else _two_lines(c.name)
-             for c in rating.loaded]  # fmt: skip
+    names = ["\n".join(plain(line) for line in textwrap.wrap(c.name, 22)) for c in rating.loaded]
     axes.set_yticks(range(len(names)), names)
     axes.set(xlabel="temperature [degC]", xlim=(low, high), ylim=(len(names) - 0.5, -0.5))
     axes.grid(axis="x", color="0.88", linewidth=0.6)
@@ -52,10 +51,6 @@ def ladders(rating: Rating, axes: Axes) -> None:
     axes.tick_params(labelsize=7)
     axes.xaxis.label.set_fontsize(7.5)
     _legend(axes)
-
-
-def _two_lines(name: str) -> str:
-    return "\n".join(plain(line) for line in textwrap.wrap(name, 22))
 
 
 def _joints(state: State) -> tuple[float, float]:

@@ -38,10 +38,9 @@ def conduction(rating: Rating) -> Section:
     rows = [
         (
             c.leg,
-            c.material,
-            f"{number(c.thermal_conductivity_W_per_m_K)} W/m/K",
-            f"{number(c.electronic_thermal_conductivity_W_per_m_K)} W/m/K",
-            f"{number(c.lattice_thermal_conductivity_W_per_m_K)} W/m/K",
+            number(c.thermal_conductivity_W_per_m_K),
+            number(c.electronic_thermal_conductivity_W_per_m_K),
+            number(c.lattice_thermal_conductivity_W_per_m_K),
             percent(c.lattice_thermal_conductivity_W_per_m_K / c.thermal_conductivity_W_per_m_K, 0),
         )
         for c in rating.conduction
@@ -52,7 +51,7 @@ def conduction(rating: Rating) -> Section:
     said = "; ".join(f"{leg} leg: {basis}" for basis, leg in legs.items())
     return section(
         "Heat conduction of the legs",
-        table(("leg", "material", "kappa", "carriers", "lattice", "lattice share"), rows, (0, 1)),
+        table(("leg", "kappa [W/m/K]", "by carriers [W/m/K]", "by lattice [W/m/K]", "share of lattice"), rows),
         words(
             f"Means over the rated legs, {celsius(first.T_cold_K)} to {celsius(first.T_hot_K)}. Part of the carriers: "
             f"{said}."
@@ -68,17 +67,17 @@ def making(made: Making) -> Section:
             c.material,
             _doping(c.doping_per_m3),
             "even" if c.doping_hot_per_m3 is None else _doping(c.doping_hot_per_m3),
-            _doping(c.doping_for_figure_of_merit_per_m3),
-            "as filed" if c.grain_size_m is None else write(c.grain_size_m, "m", "nm" if c.grain_size_m < 1e-6 else "um"),
+            "-" if c.doping_for_figure_of_merit_per_m3 is None else _doping(c.doping_for_figure_of_merit_per_m3),
+            _grains(c.grain_size_m),
         )
         for c in made.choices
     ]
     asked = any(c.doping_for_figure_of_merit_per_m3 is not None for c in made.choices)
     base = "doped for the best mean zT" if asked else "as in their files"
+    plain = amount(made.power_with_best_figure_of_merit_W, "W")
     said = [
-        f"Made so the legs give {amount(made.power_W, 'W')}, {base} {amount(made.power_with_best_figure_of_merit_W, 'W')}: "
-        f"choosing for this brief gains {amount(made.power_gained_W, 'W')} ({percent(made.share_gained, 2)}), before "
-        "rounding to workshop steps."
+        f"Made so, the legs give {amount(made.power_W, 'W')} at the leads, {base} {plain}: this choice gains "
+        f"{amount(made.power_gained_W, 'W')} ({percent(made.share_gained, 2)}), before rounding."
     ]
     grade = made.power_gained_by_grade_W
     if grade is not None:
@@ -89,6 +88,10 @@ def making(made: Making) -> Section:
         )  # fmt: skip
     heads = ("leg", "material", "doping, cold end", "hot end", "for best mean zT", "grain size")
     return section("Materials made for this brief", table(heads, rows, (0, 1)), words(*said))
+
+
+def _grains(size: float | None) -> str:
+    return "as filed" if size is None else write(size, "m", "nm" if size < 1e-6 else "um")
 
 
 def _doping(value: float | None) -> str:

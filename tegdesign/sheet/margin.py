@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator
 from itertools import groupby
 
@@ -13,11 +14,14 @@ from tegdesign.sheet.section import Section, section, table, words
 
 SHOWN = {"kg/s": (1e3, "g/s")}  # unit -> factor and unit that people like to see
 POWER = "required power"
+GIVEN = (POWER, "required efficiency")  # requirements are missed, limits are broken
+NAMES = {"temperature difference": "source above sink"}
 
 
 def break_even(rating: Rating) -> Section | None:
-    """Give for each state the source at which its power is just met; of all else the state that is nearest to failing."""
-    told, least = [], {}
+    """Give for each state where its power is just met; of all else the state that is nearest to failing."""
+    told: list[BreakEven] = []
+    least: dict[tuple[str, str], BreakEven] = {}
     for b in rating.margins.break_even:
         if b.purpose == POWER:
             told.append(b)
@@ -26,27 +30,40 @@ def break_even(rating: Rating) -> Section | None:
     told = [*told, *least.values()]
     if not told:
         return None
-    rows = [(b.quantity, b.state, _value(b, b.now), *_found(b), percent(b.room) if b.reached else "-") for b in told]
-    heads = ("varied alone", "state", "now", "just met at", "limit", "room")
-    said = "The rest as it is: coefficients stay when a flow is varied. Power: every state that must give it; else the "
+    rows = [
+        (b.limit if b.reached else b.purpose, b.limit_state if b.reached else b.state,
+         NAMES.get(b.quantity, b.quantity), _value(b, b.now),
+         _place(b), percent(b.room) if b.reached else "-")
+        for b in told
+    ]  # fmt: skip
+    ends = [
+        f"{b.purpose} ({b.state}), {b.quantity}: not just met within what was looked at, which ends at "
+        f"{_value(b, b.value)}" + (f" by the {_named(b.limit, b.limit_state)}." if b.limit else ".")
+        for b in told
+        if not b.reached
+    ]
     return section(
-        "Break-even", table(heads, rows, (0, 1, 4)), words(f"{said}state that is nearest to a limit, its open circuit included.")
-    )  # fmt: skip
+        "Break-even",
+        table(("just met", "state", "varied alone", "now", "at", "room"), rows, (0, 1, 2)),
+        words(
+            "Each varied with the rest as it is; coefficients stay when a flow is varied. Power: every state that must "
+            "give it; else the state that is nearest to a limit, open circuit included.",
+            *ends,
+        ),
+    )
 
 
 def _value(b: BreakEven, value: float) -> str:
     return quantity(value, b.unit, temperature=b.key == "source_temperature_K")
 
 
-def _found(b: BreakEven) -> tuple[str, str]:
-    """Return the break-even and its limit in words."""
-    value = _value(b, b.value)
-    limit = f"{b.limit} ({b.limit_state})" if b.limit else "none so far"
+def _place(b: BreakEven) -> str:
+    """Return the break-even in words, with the temperature of the source beside a difference."""
     if not b.reached:
-        return f"{'below' if b.value < b.now else 'above'} {value}", f"search ends: {limit}" if b.limit else limit
-    with_source = b.unit == "K" and b.key != "source_temperature_K" and b.source_temperature_K is not None
-    beside = f", source {celsius(b.source_temperature_K)}" if with_source and b.source_temperature_K else ""
-    return f"{b.sense} {value}{beside}", limit
+        return "not reached"
+    source = b.source_temperature_K
+    beside = f" ({celsius(source)})" if source is not None and b.key != "source_temperature_K" else ""
+    return f"{b.sense} {_value(b, b.value)}{beside}"
 
 
 def quantity(value: float, unit: str, temperature: bool = False) -> str:
@@ -69,14 +86,22 @@ def windows(rating: Rating) -> Section | None:
 
 def window_words(w: Window) -> str:
     """Return a window with its two limits in words."""
-    low, high, now = (quantity(v, w.unit) for v in (w.low.value, w.high.value, w.now))
-    return f"{w.variable} {low} to {high} (now {now}): below it {_broken(w.low)}, above it {_broken(w.high)}."
+    low, high, now = _bound("least", w.low.value, w.unit), _bound("most", w.high.value, w.unit), quantity(w.now, w.unit)
+    span = f"only {now}" if low == high == now else f"{low} to {high} (now {now})"
+    return f"{w.variable} {span}: below it {_broken(w.low)}, above it {_broken(w.high)}."
+
+
+def _bound(sense: str, value: float, unit: str) -> str:
+    """Return a bound in words; counts are whole, rounded to the side that holds."""
+    if unit == "1":
+        value = float(math.ceil(value - 1e-6) if sense == "least" else math.floor(value + 1e-6))
+    return quantity(value, unit)
 
 
 def _broken(end: End) -> str:
     if not end.state:
         return end.limit
-    return f"{_named(end.limit, end.state)} is {'missed' if end.limit.startswith('required') else 'broken'}"
+    return f"{_named(end.limit, end.state)} is {'missed' if end.limit in GIVEN else 'broken'}"
 
 
 def _named(limit: str, state: str) -> str:
@@ -84,7 +109,7 @@ def _named(limit: str, state: str) -> str:
 
 
 def mending(rating: Rating, limits: Limits | None = None) -> Iterator[str]:
-    """Yield for each limit that is missed the variables that would mend it, else the two limits that exclude each other.
+    """Yield for each limit that is missed the variables that would mend it, and the nearest limit that excludes it.
 
     With the limits of a brief it is told where a value lies outside of them.
     """
@@ -94,18 +119,23 @@ def mending(rating: Rating, limits: Limits | None = None) -> Iterator[str]:
     named = {m.limit for m in found}
     for _, group in groupby(found, key=lambda m: m.limit):
         mends = list(group)
-        free = [m for m in mends if m.against is None]
-        if free:
-            for m in free:
-                yield f"{_named(m.limit, m.state)}: held with {_need(m)} (now {quantity(m.now, m.unit)}){_beyond(m, limits)}."
-            continue
-        yield _exclusion(min(mends, key=_conflict), limits)
+        for m in mends:
+            if m.against is None:
+                held = f"{_named(m.limit, m.state)}: held with {_need(m)} (now {quantity(m.now, m.unit)})"
+                yield f"{held}{_beyond(rating, m, limits)}{_still(m)}."
+        excluded = [m for m in mends if m.against is not None]
+        if excluded:
+            yield _exclusion(rating, min(excluded, key=_conflict), limits)
     for limit in dict.fromkeys(c.name for c in rating.failed if c.name not in named):
         yield f"{limit}: no single dimension of the design mends it within the range looked at."
 
 
+def _still(m: Mend) -> str:
+    return f"; {', '.join(m.still_missed)} stays missed" if m.still_missed else ""
+
+
 def _need(m: Mend) -> str:
-    return f"{m.variable} at {m.sense} {quantity(m.value, m.unit)}"
+    return f"{m.variable} at {m.sense} {_bound(m.sense, m.value, m.unit)}"
 
 
 def _conflict(m: Mend) -> float:
@@ -115,29 +145,30 @@ def _conflict(m: Mend) -> float:
     return max(ratio, 1 / ratio)
 
 
-def _exclusion(m: Mend, limits: Limits | None) -> str:
+def _exclusion(rating: Rating, m: Mend, limits: Limits | None) -> str:
     assert m.against is not None
     other = "least" if m.sense == "most" else "most"
     return (
         f"{_named(m.limit, m.state)} needs {_need(m)}, but {_named(m.against.limit, m.against.state)} needs at {other} "
-        f"{quantity(m.against.value, m.unit)}: they exclude each other (now {quantity(m.now, m.unit)})"
-        f"{_beyond(m, limits)}."
+        f"{_bound(other, m.against.value, m.unit)}: they exclude each other (now {quantity(m.now, m.unit)})"
+        f"{_beyond(rating, m, limits)}."
     )
 
 
-def _beyond(m: Mend, limits: Limits | None) -> str:
+def _beyond(rating: Rating, m: Mend, limits: Limits | None) -> str:
     """Say that a value lies outside the limits of the brief."""
     if limits is None:
         return ""
-    most = float(limits.modules)
+    g, most = rating.design.module, float(limits.modules)
     spans: dict[str, tuple[float, float]] = {
         "leg_length_m": limits.leg_length,
         "leg_side_n_at_same_fill_m": limits.leg_side,
         "couples": limits.couples,
-        "modules_in_series": (1.0, most),
-        "modules_in_parallel": (1.0, most),
+        "modules_in_series": (1.0, most // g.modules_in_parallel),
+        "modules_in_parallel": (1.0, most // g.modules_in_series),
     }
     low, high = spans[m.key]
     if low <= m.value <= high:
         return ""
-    return f"; outside the {quantity(low, m.unit)} to {quantity(high, m.unit)} of the brief"
+    allowed = quantity(low, m.unit) if low == high else f"{quantity(low, m.unit)} to {quantity(high, m.unit)}"
+    return f"; the brief allows {allowed}"

@@ -6,7 +6,7 @@ import re
 from collections.abc import Sequence
 
 from tegdesign.design.rating import Rating
-from tegdesign.sheet import description, legs, performance, states
+from tegdesign.sheet import description, legs, margin, performance, states
 from tegdesign.sheet.section import Block, Entry, Facts, Section, Words
 
 
@@ -19,6 +19,8 @@ def sections(rating: Rating) -> list[Section]:
         states.section_of_states(rating),
         performance.nominal(rating),
         performance.limits(rating),
+        margin.break_even(rating),
+        margin.windows(rating),
         performance.ceiling(rating),
         description.geometry(rating),
         performance.ladder(rating),

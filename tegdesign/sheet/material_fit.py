@@ -136,8 +136,8 @@ def figure(fit: Fit) -> Figure:
         axes.set_xlabel("temperature [K]")
         axes.xaxis.set_tick_params(labelbottom=True)
         axes.grid(color="0.88", linewidth=0.6)
-    for axes in drawing.axes[1:3]:
-        axes.set_ylim(0.0, None)
+    for axes, room in zip(drawing.axes[1:3], (1.15, 1.35), strict=True):  # for the legend
+        axes.set_ylim(0.0, room * axes.get_ylim()[1])
     for axes in drawing.axes:
         axes.legend(fontsize=8)
     drawing.suptitle(textwrap.fill(plain(f"{fit.table.name}: {fit.model.text}"), 80), fontsize=11)

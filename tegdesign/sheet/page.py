@@ -224,7 +224,7 @@ class Pages:
         self.rows(cells[1:], widths, block.right)
 
     def _widths(self, cells: Sequence[Sequence[str]], right: Sequence[int]) -> list[float]:
-        """Return the widths of columns [pt]: whole cells, else folded between words, at last inside them."""
+        """Return widths of columns [pt]: whole cells, else folded between words, heads first, at last inside them."""
 
         def widest(k: int, split: bool) -> float:
             pieces = ((w, row is cells[0]) for row in cells for w in (_pieces(row[k]) if split else [row[k]]))
@@ -238,12 +238,13 @@ class Pages:
             for k in columns
         ]
         least = [max(heads[k], figures[k]) if k in right else widest(k, split=True) for k in columns]
-        for floor in (least, [3 * self.size] * len(widths)):
+        heads_folded = [least[k] if k in right else widths[k] for k in columns]
+        for floor in (heads_folded, least, [3 * self.size] * len(widths)):
             while (over := sum(widths) + PAD * (len(widths) - 1) - self.width) > 0:
                 loose = [k for k in columns if widths[k] > floor[k]]
                 if not loose:
                     break
-                k = max(loose, key=lambda k: (widths[k] - floor[k]) * (0.3 if k in right else 1.0))
+                k = max(loose, key=lambda k: widths[k] - floor[k])
                 widths[k] = max(floor[k], widths[k] - min(over, 4.0) - 1e-6)
         return widths
 

@@ -10,7 +10,7 @@ from tegdesign import __version__
 from tegdesign.design.rating import Rating
 from tegdesign.design.scan import Sweep, against_hot, curve
 from tegdesign.errors import ConvergenceError
-from tegdesign.sheet import description, figures, ladders, legs, performance, plan, states
+from tegdesign.sheet import description, figures, ladders, legs, margin, performance, plan, ranges, states
 from tegdesign.sheet.page import BOTTOM, HEIGHT, LEFT, RIGHT, TOP, WIDTH, Pages, fold, shorten, text_width
 
 if TYPE_CHECKING:
@@ -65,6 +65,7 @@ def sheet_pages(rating: Rating) -> list[Figure]:
     _fill(pages, lambda on: _front(on, rating), columns=1, most=1)
     if states.named(rating):
         _fill(pages, lambda on: _states(on, rating), columns=1, most=1)
+        ranges.on_pages(pages, rating)
     pages.new_page()
     _drawings(pages, rating)
     pages.new_page()
@@ -111,6 +112,8 @@ def _states(pages: Pages, rating: Rating) -> None:
 
 def _behind(pages: Pages, rating: Rating) -> None:
     for section in (
+        margin.break_even(rating),
+        margin.windows(rating),
         performance.losses(rating),
         legs.conduction(rating),
         performance.optima(rating),

@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Iterator, Sequence
+from collections.abc import Callable, Iterator, Sequence
 
 from tegdesign.design.rating import Check, Rating, State
 from tegdesign.design.wording import amount, both, celsius, kelvin, number, percent
 from tegdesign.sheet.legs import known
+from tegdesign.sheet.margin import mending
 from tegdesign.sheet.section import Entry, Section, facts, section, table, words
 from tegdesign.sheet.states import named
 
@@ -45,7 +46,8 @@ def verdict(rating: Rating) -> Section:
         )
     said = Entry(f"NOT MET: {len(rating.failed)} of {total} limits and requirements are missed.", ())
     rows = [_row(c) for c in rating.failed]
-    return section("Verdict", said, table(("missed", "state", "value", "limit", "missed by"), rows, (0, 1)))
+    missed = table(("missed", "state", "value", "limit", "missed by"), rows, (0, 1))
+    return section("Verdict", said, missed, words(*mending(rating)))
 
 
 def limits(rating: Rating) -> Section:
@@ -120,7 +122,8 @@ def _electrical(rating: Rating, s: State) -> list[tuple[str, str]]:
         ("voltage right after opening", amount(s.open_circuit_voltage_V, "V")),
         ("efficiency", percent(0.0 if power == 0 else s.efficiency, 2)),
         ("heat drawn", amount(s.heat_in_W, "W")),
-        ("heat past the legs", f"{amount(s.bypass_heat_W, 'W')} ({percent(s.bypass_heat_W / s.heat_in_W)})"),
+        ("heat past the legs", amount(s.bypass_heat_W, "W")),
+        ("its share of the heat drawn", percent(s.bypass_heat_W / s.heat_in_W)),
         ("heat rejected", amount(s.heat_out_W, "W")),
         ("heat flux, hot face", f"{number(s.heat_flux_hot_W_per_m2 / 1e4)} W/cm2"),
         *_of_given_heat(rating, s),
@@ -246,7 +249,7 @@ def optima(rating: Rating) -> Section:
     """Put the state of most power beside that of best efficiency."""
     power, efficient = rating.state("most power"), rating.state("best efficiency")
     shown = (rating.rated, power, efficient)
-    columns = [_electrical(rating, s)[:10] + _thermal(s)[1:3] for s in shown]
+    columns = [_electrical(rating, s)[:9] + _thermal(s)[1:3] for s in shown]
     rows = [(pairs[0][0], *(value for _, value in pairs)) for pairs in zip(*columns, strict=True)]
     return section(
         "Most power and best efficiency",
@@ -340,18 +343,15 @@ def shorted(rating: Rating) -> Section:
     )
 
 
-def _and(words_: Iterable[str]) -> str:
-    return " and ".join(dict.fromkeys(words_))
-
-
 def data_range(rating: Rating) -> Section:
     """Say whether the states stay inside the measured temperatures."""
     ranges = [
         (f"{leg} leg", f"{m.name}: {known(m)} from {both(m.range[0])} to {both(m.range[1])}")
         for leg, m in zip("np", rating.materials, strict=True)
     ]
+    kinds = " and ".join(dict.fromkeys(known(m) for m in rating.materials))
     if not rating.held:
-        return section("Data range", facts(*ranges), words(f"All states lie inside the {_and(known(m) for m in rating.materials)} range."))
+        return section("Data range", facts(*ranges), words(f"All states lie inside the {kinds} range."))
     rows = [(d.leg, d.state, kelvin(d.below_K), kelvin(d.above_K)) for d in rating.held]
     heads = ("leg", "state", "held below", "held above")
     return section("Data range", facts(*ranges), table(heads, rows, (0, 1)))

@@ -5,8 +5,9 @@ from __future__ import annotations
 from tegdesign.design.rating import Check
 from tegdesign.design.size import Sizing
 from tegdesign.sheet.legs import making
+from tegdesign.sheet.margin import mending
 from tegdesign.sheet.table import table_text
-from tegdesign.sheet.text import rating_report, section_text
+from tegdesign.sheet.text import INDENT, WIDTH, fold, rating_report, section_text
 
 AIM_UNIT = {"power": "W", "efficiency": "%", "power per footprint": "W/m2", "power per material mass": "W/kg"}
 
@@ -26,6 +27,7 @@ def verdict(sizing: Sizing) -> str:
     if sizing.met:
         return f"BRIEF MET: {sizing.brief.title}"
     lines = [f"BRIEF NOT MET: {sizing.brief.title}", *(f"  {missed(c)}" for c in sizing.failed)]
+    lines += [fold(said, WIDTH, INDENT, INDENT * 2) for said in mending(sizing.rating, sizing.brief.limits)]
     return "\n".join([*lines, "  The design below is the best found within the limits."])
 
 

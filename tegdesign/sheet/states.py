@@ -34,8 +34,8 @@ def section_of_states(rating: Rating) -> Section | None:
         table([head for head, _ in columns], rows, (0, len(columns) - 1)),
         words(
             "Room: how far the junction stays from its nearest limit, in the state and in its open circuit. Data held: "
-            "by how many kelvins end values of material data are kept outside their range. The last column counts every "
-            "limit of a state and of its open circuit."
+            "by how many kelvins end values of material data are kept outside their range. The last column counts "
+            "every limit of a state and of its open circuit."
         ),
     )
 

@@ -7,7 +7,7 @@ from collections.abc import Sequence
 from itertools import zip_longest
 
 from tegdesign.design.rating import Rating
-from tegdesign.sheet import description, legs, performance, states
+from tegdesign.sheet import description, legs, margin, performance, states
 from tegdesign.sheet.section import Block, Entry, Facts, Section, Table, Words
 from tegdesign.sheet.table import table_text
 
@@ -19,6 +19,8 @@ def rating_report(rating: Rating) -> str:
     """Return the report of a rating, in the order of an engineer's questions."""
     sections = (
         performance.verdict(rating),
+        margin.break_even(rating),
+        margin.windows(rating),
         performance.ceiling(rating),
         description.geometry(rating),
         performance.conditions(rating),

@@ -35,7 +35,7 @@ def test_text_tells_all_and_files_are_written(tmp_path):
         "seebeck coefficient +3.5 500 2.5",  # pin, no outside source
         "8 degrees of freedom",
         "points beyond 2 sigma: none",
-        "strong correlations, only a combination of the two is told: doping and mobility -0.9",
+        "strong correlations, only a combination of the two is told: gap and minority_mobility_ratio +0.9",
         "for another mass m multiply the doping by m^1.5",
     ):
         assert fact in words, fact

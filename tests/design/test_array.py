@@ -136,7 +136,7 @@ def test_on_a_stream_each_module_stands_where_its_row_does(made):
     assert_allclose([m.T_source_K for m in a.modules], [r.T_source_before_K for r in rows.rows], rtol=1e-9)
     assert_allclose([m.own_power_W for m in a.modules], [r.power_W for r in rows.rows], rtol=1e-8)
     assert_allclose(a.modules[0].T_hot_junction_open_K, rows.rows[0].T_hot_junction_open_K, rtol=1e-9)
-    assert "source before its row" in a.temperatures
+    assert "source along its stream" in a.temperatures
     assert 0 < a.mismatch_loss < 0.1
 
 

@@ -114,12 +114,43 @@ def test_design_file_carries_the_states(tmp_path):
     assert Design.model_validate(design.model_dump(exclude_none=True)) == design
 
 
+def test_reversed_state_turns_the_voltage_round():
+    stack = {"hot": {"interface": "6e-5 m2*K/W"}, "cold": {"interface": "2e-5 m2*K/W"}}
+    summer = {"name": "hot noon", "source": {"inlet_temperature": "10 degC"}, "sink": {"temperature": "60 degC"}}
+    require = {"power": "1 mW"}
+    job = {"materials": JOB["materials"] | {"hold_outside_data": "40 K"}, "stack": stack, "require": require}
+    design = size(brief(summer | {"holds": []}, **job, load={"kind": "resistance", "resistance": "2 ohm"})).design
+    state = rate(design).state("hot noon")
+    assert state.voltage_V < 0
+    assert state.current_A < 0
+    assert state.power_W > 0
+    # the same module turned round by hand: plates swapped, sides exchanged
+    turned = design.model_copy(
+        update={
+            "source": design.conditions[2].source, "sink": design.conditions[2].sink, "states": (),
+            "stack": design.stack.model_copy(update={"hot": design.stack.cold, "cold": design.stack.hot}),
+        }
+    )  # fmt: skip
+    alone = rate(turned).rated
+    assert_allclose((state.power_W, -state.voltage_V), (alone.power_W, alone.voltage_V), rtol=1e-9)
+    assert "sink is the hotter side" in state.conditions
+
+
+def test_battery_blocks_a_reversed_voltage():
+    summer = {"name": "hot noon", "source": {"inlet_temperature": "10 degC"}, "sink": {"temperature": "60 degC"}}
+    materials = JOB["materials"] | {"hold_outside_data": "40 K"}
+    rating = size(brief(summer | {"holds": []}, materials=materials, load={"kind": "battery", "voltage": "3 V"})).rating
+    state = rating.state("hot noon")
+    assert (state.current_A, state.delivered_power_W) == (0, 0)
+    assert state.voltage_V < 0
+
+
 WRONG = {
     "name taken": ([LOST, LOST], "state 'coolant lost': the name is taken"),
     "name of ours": ([{"name": "rated"}], "state 'rated': the name is taken"),
     "unknown key": ([{"name": "x", "sink": {"coeficient": "12 W/m2/K"}}], "state 'x': unknown key: sink.coeficient"),
     "missing unit": ([{"name": "x", "sink": {"coefficient": 12}}], "state 'x': sink.coefficient: 12 has no unit"),
-    "colder than sink": ([{"name": "x", "source": {"inlet_temperature": "20 degC"}}], "state 'x': source at 293.15 K"),
+    "no difference": ([{"name": "x", "source": {"inlet_temperature": "40 degC"}}], "state 'x': source at 313.15 K"),
     "other load": ([{"name": "x", "load": "closed"}], "load"),
     "other kind": ([{"name": "x", "sink": {"kind": "surface"}}], "state 'x': missing key: sink.temperature"),
 }

@@ -85,7 +85,40 @@ TINY = PLAIN | {
     },
     "materials": PLAIN["materials"] | {"hold_outside_data": "60 K"},
 }
-CASES = {"plain": PLAIN, "heavy": HEAVY, "tiny": TINY}
+# states of every sort behind a converter that keeps some power
+STATES = PLAIN | {
+    "title": "Kiln wall in eight states",
+    "load": {
+        "kind": "converter", "running_voltage": ["1 V", "4 V"], "start_voltage": "2 V", "input_voltage_limit": "30 V",
+        "efficiency": 0.9, "standby_power": "50 mW",
+    },
+    "materials": PLAIN["materials"] | {"hold_outside_data": "60 K"},
+    "require": {"power": "2 W", "hot_junction": "240 degC", "short_time_hot_junction": "280 degC"},
+    "states": [
+        {"name": "winter", "sink": {"temperature": "5 degC"}, "source": {"coefficient": "700 W/m2/K"}},
+        {"name": "over-fired for a while after the charge", "source": {"temperature": "340 degC"}, "duration": "20 min",
+         "holds": []},
+        {"name": "unplugged", "load": "open"},
+        {"name": "shorted", "load": "short"},
+        {"name": "start of the week", "source": {"temperature": "60 degC"}, "holds": ["voltage"]},
+        {"name": "other converter", "load": {"efficiency": 0.8}},
+        {"name": "by water", "sink": {"kind": "surface", "temperature": "45 degC"}},
+    ],
+}  # fmt: skip
+# computed materials, one of them graded, heat by light
+COMPUTED = PLAIN | {
+    "title": "Sunlit couple of computed materials",
+    "source": {
+        "kind": "irradiance", "irradiance": "1 kW/m2", "aperture": "1600 cm2", "concentration": 40,
+        "transmittance": 0.9, "absorptance": 0.95, "emittance": 0.05,
+    },
+    "materials": {
+        "n": "lead-telluride-n-bands", "p": "lead-telluride-p-bands", "hold_outside_data": "30 K",
+        "make_n": {"doping": "1e19 1/cm3", "doping_hot": "2e19 1/cm3", "graded_between": ["50 degC", "250 degC"]},
+        "make_p": {"doping": "4e19 1/cm3", "grain_size": "800 nm"},
+    },
+}  # fmt: skip
+CASES = {"plain": PLAIN, "heavy": HEAVY, "tiny": TINY, "states": STATES, "computed": COMPUTED}
 
 
 @pytest.fixture(scope="session")

@@ -94,10 +94,10 @@ class Band:
         gamma, slope = BOLTZMANN * t * energy, np.ones(1)
         if self.kane_gap is not None:
             ratio = BOLTZMANN * t / positive_at(self.kane_gap, t, f"kane_gap of {self.label}")
-            bent = ratio * energy
-            slope = 1 + 2 * bent
-            bent += 1
-            gamma *= bent
+            slope = 2 * ratio * energy
+            slope += 1
+            gamma *= slope + 1
+            gamma *= 0.5
         return States(t, energy, gamma, slope, mass, inertial)
 
     def distribution(self, states: States, around: Surroundings) -> Array:
@@ -112,14 +112,17 @@ class Band:
         """
         rate = self.scattering[0].rate(states, around)
         for mechanism in self.scattering[1:]:
-            rate = rate + mechanism.rate(states, around)
-        if not np.all(rate > 0):
+            rate += mechanism.rate(states, around)
+        if not rate.min() > 0:
             raise InputError(
                 f"scattering of {self.label} is 0 1/s but must be above 0 (ionised impurities alone do "
                 "that at zero net doping); give their density or a second mechanism"
             )
         factor = self.degeneracy * CHARGE**2 / (3 * pi**2 * HBAR**3) * (2 * states.mass) ** 1.5
-        return np.asarray(factor / (states.inertial_mass * states.slope) * states.volume / rate)
+        rate *= states.slope
+        result = np.divide(states.volume, rate, out=rate)
+        result *= factor / states.inertial_mass
+        return result
 
     def states_below(self, states: States) -> Array:
         """Return the number of states between the edge and the energies [1/m^3]: N (2 m gamma)^1.5 / (3 pi^2

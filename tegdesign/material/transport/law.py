@@ -77,6 +77,8 @@ def positive_at(law: Law, temperature: Array, what: str) -> Array:
         It is zero, negative or not a number at one of the temperatures.
     """
     value = at_temperature(law, temperature, what)
+    if isinstance(law, (int, float)) and 0 < law < np.inf:
+        return value
     wrong = ~((value > 0) & np.isfinite(value))
     if wrong.any():
         k = np.unravel_index(np.argmax(wrong), wrong.shape)

@@ -45,7 +45,8 @@ class Window(NamedTuple):
         first = np.einsum("...n,...n->...", part, self.distance)
         mean = np.divide(first, total, out=np.zeros_like(total), where=total > 0)
         away = self.distance - mean[..., None]
-        return total, mean, np.asarray(np.einsum("...n,...n,...n->...", part, away, away))
+        part *= away
+        return total, mean, np.asarray(np.einsum("...n,...n->...", part, away))
 
 
 @lru_cache(maxsize=8)
@@ -66,14 +67,13 @@ def fermi_window(level: ArrayLike) -> Window:
     eta = np.asarray(level, dtype=float)
     cell = np.clip(np.rint(eta / _STEP), _FIRST, _LAST).astype(np.intp) - _FIRST
     deep = np.maximum(eta - HALF_WIDTH, 0.0)  # there the nodes move with the level
+    ratio = np.exp(eta - deep - _STEP * (cell + _FIRST))[..., None]
     # take() copies also for a single level, where an index would give a view into the table.
-    energy, tail = rules.energy.take(cell, axis=0), rules.tail.take(cell, axis=0)
-    tail *= np.exp(eta - deep - _STEP * (cell + _FIRST))[..., None]
-    weight = rules.weight.take(cell, axis=0)
-    weight *= tail
-    tail += 1
-    tail *= tail
-    weight /= tail
+    energy, weight = rules.energy.take(cell, axis=0), rules.rising.take(cell, axis=0)
+    weight *= ratio
+    weight += rules.falling.take(cell, axis=0)
+    weight *= weight
+    np.divide(ratio, weight, out=weight)
     distance = energy - (eta - deep)[..., None]
     if deep.any():
         energy += deep[..., None]
@@ -81,13 +81,15 @@ def fermi_window(level: ArrayLike) -> Window:
 
 
 class _Rules(NamedTuple):
-    """Nodes above the edge, weights, exp(level - node), for the levels in the middle of the cells; shape (C,
-    N).
+    """Nodes z above the edge for the levels in the middle of the cells, and the weight w of each, shape (C, N).
+
+    With t = exp(level - z) and r = exp(distance of a level from its middle), w times the window is
+    ``w r t / (1 + r t)^2 = r / (falling + r rising)^2``: ``falling`` = (w t)^-0.5, ``rising`` = (t / w)^0.5.
     """
 
     energy: Array
-    weight: Array
-    tail: Array
+    falling: Array
+    rising: Array
 
 
 @lru_cache(maxsize=1)
@@ -113,7 +115,8 @@ def _rules() -> _Rules:
     s = first + width * t
     u = centre + breadth * np.sinh(s)
     energy = u**4
-    return _Rules(energy, 4 * u**3 * breadth * np.cosh(s) * width * w, np.exp(level - energy))
+    weight, tail = 4 * u**3 * breadth * np.cosh(s) * width * w, np.exp(level - energy)
+    return _Rules(energy, 1 / np.sqrt(weight * tail), np.sqrt(tail / weight))
 
 
 def half_power(base: Array, exponent: float) -> Array:

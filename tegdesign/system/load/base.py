@@ -127,6 +127,11 @@ class Load(Part):
         return False
 
     @property
+    def both_ways(self) -> bool:
+        """Whether the load takes current of either sign, as when the temperature difference reverses."""
+        return True
+
+    @property
     def passive(self) -> bool:
         """Whether the load can only take power, never drive current through the generator."""
         return True

@@ -17,6 +17,11 @@ class Charger(Load):
     current_limit: Annotated[float, Measure("A"), Field(gt=0)] | None = None
     duty: Duty | None = None
 
+    @property
+    def both_ways(self) -> bool:
+        """It blocks a voltage of the other sign."""
+        return False
+
     def limits(self) -> tuple[LoadLimit, ...]:
         """Return the greatest current, where one is given."""
         if self.current_limit is None:

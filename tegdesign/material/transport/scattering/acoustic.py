@@ -36,4 +36,4 @@ class Acoustic:
         """Return 1/tau [1/s] in the shape of the states."""
         strength = self.deformation_potential**2 / self.elastic_constant
         factor = (2 * pi * BOLTZMANN / HBAR * strength) * states.temperature
-        return np.asarray(factor * (1 - 4 / 3 * states.mixing) * states.density)
+        return np.asarray(factor * states.overlapping)

@@ -44,4 +44,4 @@ class Alloy:
         """Return 1/tau [1/s] in the shape of the states."""
         strength = self.fraction * (1 - self.fraction) * self.atomic_volume * self.potential**2
         factor = 3 * pi**3 / (4 * HBAR) * strength
-        return np.asarray(factor * (1 - 4 / 3 * states.mixing) * states.density)
+        return np.asarray(factor * states.overlapping)

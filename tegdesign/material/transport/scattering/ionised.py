@@ -10,7 +10,6 @@ import numpy as np
 from tegdesign.material.curve import Array
 from tegdesign.material.transport.constants import CHARGE, HBAR, VACUUM_PERMITTIVITY
 from tegdesign.material.transport.law import above_zero
-from tegdesign.material.transport.scattering.angle import angle_integral
 from tegdesign.material.transport.scattering.states import States, Surroundings
 
 
@@ -43,6 +42,7 @@ class IonisedImpurity:
         absolute = self.permittivity * VACUUM_PERMITTIVITY
         screening = CHARGE**2 / absolute * around.screening
         number = around.net_density / self.charge if self.density is None else self.density
-        angle = angle_integral(4 * states.wave_number_squared / screening, states.mixing, 2)
         strength = number * (2 * self.charge * CHARGE**2 / (absolute * screening)) ** 2 / 2
-        return np.asarray((2 * pi / HBAR * strength) * states.density * angle)
+        rate = (2 * pi / HBAR * strength) * states.density
+        rate *= states.deflection(self.permittivity, around).integral(states.mixing, 2)
+        return np.asarray(rate)

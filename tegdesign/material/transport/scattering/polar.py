@@ -11,7 +11,6 @@ from tegdesign.errors import InputError
 from tegdesign.material.curve import Array
 from tegdesign.material.transport.constants import BOLTZMANN, CHARGE, HBAR, VACUUM_PERMITTIVITY
 from tegdesign.material.transport.law import above_zero
-from tegdesign.material.transport.scattering.angle import angle_integral
 from tegdesign.material.transport.scattering.states import States, Surroundings
 
 
@@ -47,6 +46,7 @@ class PolarOptical:
         static = self.static_permittivity * VACUUM_PERMITTIVITY
         polar = 1 / (self.optical_permittivity * VACUUM_PERMITTIVITY) - 1 / static
         screening = CHARGE**2 / static * around.screening
-        angle = angle_integral(4 * states.wave_number_squared / screening, states.mixing, 1)
         strength = CHARGE**2 * BOLTZMANN * states.temperature * polar * 2 / screening
-        return np.asarray((2 * pi / HBAR * strength) * states.density * angle)
+        rate = (2 * pi / HBAR * strength) * states.density
+        rate *= states.deflection(self.static_permittivity, around).integral(states.mixing, 1)
+        return np.asarray(rate)

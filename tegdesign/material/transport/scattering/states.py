@@ -12,10 +12,11 @@ from typing import Protocol
 import numpy as np
 
 from tegdesign.material.curve import Array
-from tegdesign.material.transport.constants import HBAR
+from tegdesign.material.transport.constants import CHARGE, HBAR, VACUUM_PERMITTIVITY
+from tegdesign.material.transport.scattering.angle import Deflection
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Surroundings:
     """What the other carriers and the grains do to a carrier, one value a point, shape (..., 1).
 
@@ -66,12 +67,9 @@ class States:
         """Density of states of one valley and one spin [1/(J m^3)]: (2 m)^1.5 gamma^0.5 gamma' / (4 pi^2
         hbar^3).
         """
-        return np.asarray((2 * self.mass) ** 1.5 / (4 * pi**2 * HBAR**3) * self.slope * self.root)
-
-    @cached_property
-    def wave_number_squared(self) -> Array:
-        """k^2 = 2 m gamma / hbar^2 [1/m^2]."""
-        return np.asarray(2 * self.mass / HBAR**2 * self.gamma)
+        result = (2 * self.mass) ** 1.5 / (4 * pi**2 * HBAR**3) * self.root
+        result *= self.slope
+        return np.asarray(result)
 
     @cached_property
     def speed(self) -> Array:
@@ -84,7 +82,31 @@ class States:
 
         K = 2 a z (1 + a z) / (1 + 2 a z)^2 = (1 - 1/gamma'^2) / 2; 0 when parabolic.
         """
-        return np.asarray(0.5 - 0.5 / self.slope**2)
+        result = self.slope * self.slope
+        np.divide(-0.5, result, out=result)
+        result += 0.5
+        return np.asarray(result)
+
+    @cached_property
+    def overlapping(self) -> Array:
+        """Density of states [1/(J m^3)] times 1 - 4K/3, what scattering into all angles alike leaves of it."""
+        result = -4 / 3 * self.mixing
+        result += 1
+        return np.asarray(result * self.density)
+
+    def deflection(self, permittivity: float, around: Surroundings) -> Deflection:
+        """Return the integrals over the angle in a potential screened by the carriers around, permittivity in
+        vacuum's; made once for all mechanisms of equal permittivity.
+        """
+        key = permittivity, around
+        if key not in self._deflections:
+            per_gamma = 8 * self.mass / HBAR**2 * (permittivity * VACUUM_PERMITTIVITY / CHARGE**2) / around.screening
+            self._deflections[key] = Deflection(per_gamma * self.gamma)
+        return self._deflections[key]
+
+    @cached_property
+    def _deflections(self) -> dict[tuple[float, Surroundings], Deflection]:
+        return {}
 
 
 class Mechanism(Protocol):
