@@ -137,7 +137,7 @@ def _range(whole: Varying, rated: Varying, variable: Variable) -> Range:
     beyond = _BEYOND * (high - low) or _ALONE * now
     low, high = min(low, max(low - beyond, zero + _LEAST * now)), high + beyond
     values = np.linspace(low, high, POINTS)
-    e = along(rated, variable, (values / now)[None, :])
+    e = along(rated, variable, ((values - zero) / now)[None, :])
     return Range(*names, tuple(_row(e, 0, float(v), k) for k, v in enumerate(values) if _solved(e, k)), {
         state.name: _row(whole.base, g, value, 0)
         for g, (state, value) in enumerate(zip(whole.groups, _values(whole, variable), strict=True))

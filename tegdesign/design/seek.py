@@ -47,7 +47,8 @@ class Bracket:
     @property
     def done(self) -> bool:
         """Whether the place is known well enough."""
-        return self.variable.whole or self.width <= (_SMOOTH if self.foretold else _NARROW)
+        known = self.foretold or self.decisive is None  # to the end of what can be solved it need not be closer
+        return self.variable.whole or self.width <= (_SMOOTH if known else _NARROW)
 
     def crossings(self) -> Array:
         """Return the ratio at which each limit that changes sides crosses its bound, were it straight; else nan."""
