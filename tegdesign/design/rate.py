@@ -62,7 +62,7 @@ def rate(design: Design | str | os.PathLike[str], *, refuse_outside_data: bool =
     base = len(asks) - len(without)
     end = len(asks)
     asks += [
-        Ask(c.name, inlet, c.sink, OPEN, design.losses, required=False)
+        Ask(c.name, inlet, c.sink, OPEN, design.losses, required=False, reversed=c.reversed)
         for c in conditions
         if c.load is OPEN and (inlet := c.source.inlet_end()) is not None
     ]

@@ -42,11 +42,16 @@ def section_of_states(rating: Rating) -> Section | None:
 
 def differences(rating: Rating, nominal: Condition, c: Condition) -> str:
     """Say what differs in a state from the nominal case, for how long, and what it is held to."""
-    told = [*_side("source", nominal.source, c.source), *_side("sink", nominal.sink, c.sink)]
-    if c.load is OPEN or c.load is SHORT:
+    source, sink = (c.sink, c.source) if c.reversed else (c.source, c.sink)
+    told = [*_side("source", nominal.source, source), *_side("sink", nominal.sink, sink)]
+    lost = next(s.lost for s in rating.design.states if s.name == c.name)
+    if lost:
         told.append("load lost, open circuit" if c.load is OPEN else "load shorted")
-    else:
+    elif c.load is not OPEN:
         told += _side("load", nominal.load, c.load)
+    if c.reversed:
+        blocks = ", which the load blocks" if c.load is OPEN and not lost else ""
+        told.append(f"so the sink is the hotter side, heat and voltage are reversed{blocks}")
     parts = [", ".join(told) or "as the rated state"]
     duration = rating.duration_s(c)
     if duration is not None:

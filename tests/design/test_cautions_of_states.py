@@ -159,6 +159,18 @@ def test_no_power(several):
     assert back.text.startswith("Power flows the wrong way: summer.")
 
 
+@pytest.mark.parametrize("load", [CONVERTER, {"kind": "matched"}])
+def test_reversed_voltage(several, load):
+    assert "reversed-voltage" not in found(several)
+    thaw = {"name": "thaw", "source": {"temperature": "10 degC"}, "sink": {"temperature": "30 degC"}}
+    rating = rate(design(load=load, states=[*STATES, thaw]))
+    state = "thaw, open" if load["kind"] == "matched" else "thaw"  # blocked, so open itself
+    value = found(rating)["reversed-voltage"].value
+    assert value.startswith("-")
+    assert value.endswith(f" V ({state})") or value.endswith(f" mV ({state})")
+    assert ("no-power" in found(rating)) == (load is CONVERTER)  # a resistor is heated either way
+
+
 @pytest.mark.parametrize("state", ["open circuit", "summer, open", "unplugged"])
 def test_load_input_voltage(fed, state):
     assert "load-input-voltage" not in found(with_states(fed["converter"], state, voltage_V=2.99))

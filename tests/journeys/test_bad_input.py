@@ -290,7 +290,7 @@ COMMANDS = {
     "curve and map": (["rate", "d.toml", "--curve", "--map", "module.leg_length=1 mm"], "one at a time"),
     "json and csv": (["rate", "d.toml", "--json", "--csv"], "give --json or --csv, not both"),
     "comparison in json and csv": (["compare", "b.toml", "--json", "--csv"], "give --json or --csv, not both"),
-    "figure of a table": (["rate", "d.toml", "--hot", "450 K", "--figure", "a.png"], "--figure goes with --curve or --map"),
+    "figure of a table": (["rate", "d.toml", "--hot", "450 K", "--figure", "a.png"], "--figure goes with --curve, --ranges or --map"),
     "figure of unknown format": (["rate", "d.toml", "--curve", "--figure", "a.bmp"], "a.bmp: a figure ends in .png, .pdf, .svg"),
     "ranking of unknown format": (["compare", "b.toml", "--figure", "a.gif"], "a.gif: a figure ends in .png, .pdf, .svg"),
     "sheet of unknown format": (["sheet", "d.toml", "-o", "a.docx"], ["a.docx", ".pdf", ".md"]),

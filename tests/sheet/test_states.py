@@ -47,6 +47,8 @@ def test_what_differs_is_told(several):
         "shorted": f"load shorted; {only}",
         "start of the week": "source temperature 60 degC; of the requirements only voltage",
         "other converter": "load efficiency 0.8",
+        "thaw": "source temperature 10 degC, sink temperature 30 degC, so the sink is the hotter side, heat and voltage "
+        f"are reversed, which the load blocks; {only}",
         "by water": "sink surface, temperature 45 degC",
     }
 
@@ -140,7 +142,7 @@ def test_ladders_of_all_states(several):
         rtol=1e-12,
     )  # fmt: skip
     dashed = [line for line in axes.get_lines() if line.get_linestyle() == "--"]
-    assert len(dashed) == len(several.loaded) - 1  # the unplugged one is open itself
+    assert len(dashed) == len(several.loaded) - 2  # those unplugged and blocked are open themselves
     low, _ = axes.get_xlim()
     assert min(line.get_xdata()[0] for line in axes.get_lines()) > low
 

@@ -91,6 +91,21 @@ def input_voltage(rating: Rating) -> Iterator[Caution]:
         )
 
 
+def reversed_voltage(rating: Rating) -> Iterator[Caution]:
+    """Warn of states in which the sink is the hotter side, so that the leads change their sign."""
+    found = [rating.state(c.name if c.load is OPEN else c.opened) for c in rating.loaded if c.reversed]
+    if found:
+        yield caution(
+            "reversed-voltage",
+            "Voltage the wrong way round",
+            "; ".join(f"{amount(s.voltage_V, 'V')} ({s.name})" for s in found),
+            "above 0 V",
+            "The sink is the hotter side in these states and the leads change their sign. What is joined to them must "
+            "bear it or be kept off by a diode: inputs of converters, capacitors and batteries take harm.",
+            "operating points of this rating",
+        )
+
+
 def _feeding(rating: Rating, opened: Condition) -> AnyLoad:
     """Return the load that an open circuit was taken from; that of the nominal case where the load is lost."""
     return next((c.load for c in rating.loaded if c.name == opened.of and c.load is not OPEN), rating.design.load)

@@ -20,6 +20,7 @@ RULES: tuple[Rule, ...] = (
     load.does_not_start,
     load.no_power,
     load.input_voltage,
+    load.reversed_voltage,
     data.held,
     data.losses_off,
     data.implausible,

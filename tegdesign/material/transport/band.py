@@ -4,9 +4,10 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from math import pi
-from typing import Literal
+from typing import Literal, NamedTuple
 
 import numpy as np
+from numpy.typing import NDArray
 
 from tegdesign.errors import InputError
 from tegdesign.material.curve import Array
@@ -15,6 +16,22 @@ from tegdesign.material.transport.law import Law, above_zero, at_temperature, po
 from tegdesign.material.transport.scattering.states import Mechanism, States, Surroundings
 
 Carrier = Literal["electron", "hole"]
+
+
+class Edge(NamedTuple):
+    """What a band takes from the temperature, shape (P, 1) each.
+
+    Temperature [K], masses at the edge [kg], and kT over Kane's energy (no unit; None when parabolic).
+    """
+
+    temperature: Array
+    mass: Array
+    inertial_mass: Array
+    bend: Array | None
+
+    def part(self, chosen: slice | NDArray[np.intp]) -> Edge:
+        """Return the same of some of the points."""
+        return Edge(*(value if value is None else value[chosen] for value in self))
 
 
 @dataclass(frozen=True)
@@ -78,8 +95,8 @@ class Band:
         """
         return 1 if self.carrier == "electron" else -1
 
-    def states(self, temperature: Array, energy: Array) -> States:
-        """Return the states at energies [kT above the edge], shape (P, N), for temperatures [K], shape (P,).
+    def edge(self, temperature: Array) -> Edge:
+        """Return what the band takes from temperatures [K], shape (P,).
 
         Raises
         ------
@@ -91,14 +108,16 @@ class Band:
         inertial = mass
         if self.inertial_mass is not None:
             inertial = positive_at(self.inertial_mass, t, f"inertial_mass of {self.label}") * ELECTRON_MASS
-        gamma, slope = BOLTZMANN * t * energy, np.ones(1)
+        bend = None
         if self.kane_gap is not None:
-            ratio = BOLTZMANN * t / positive_at(self.kane_gap, t, f"kane_gap of {self.label}")
-            slope = 2 * ratio * energy
-            slope += 1
-            gamma *= slope + 1
-            gamma *= 0.5
-        return States(t, energy, gamma, slope, mass, inertial)
+            bend = BOLTZMANN * t / positive_at(self.kane_gap, t, f"kane_gap of {self.label}")
+        return Edge(t, mass, inertial, bend)
+
+    def states(self, temperature: Array, energy: Array) -> States:
+        """Return the states at energies [kT above the edge], shape (P, N), for temperatures [K], shape (P,);
+        raises as ``edge``.
+        """
+        return states_above(self.edge(temperature), energy)
 
     def distribution(self, states: States, around: Surroundings) -> Array:
         """Return the transport distribution Xi [S/m] of the states, in their shape.
@@ -138,3 +157,16 @@ class Band:
     def edge_offset(self, temperature: Array) -> Array:
         """Return the offset of the edge [J] at temperatures [K], in their shape."""
         return at_temperature(self.offset, temperature, f"offset of {self.label}")
+
+
+def states_above(edge: Edge, energy: Array) -> States:
+    """Return the states at energies [kT above the edge], shape (P, N)."""
+    if edge.bend is None:
+        gamma, slope = BOLTZMANN * edge.temperature * energy, np.ones(1)
+    else:
+        slope = 2 * edge.bend * energy
+        slope += 1
+        gamma = slope + 1  # twice 1 + E/E_kane
+        gamma *= energy
+        gamma *= BOLTZMANN / 2 * edge.temperature
+    return States(edge.temperature, energy, gamma, slope, edge.mass, edge.inertial_mass)

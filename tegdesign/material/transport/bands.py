@@ -10,7 +10,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from tegdesign.errors import InputError
 from tegdesign.material.curve import Array
-from tegdesign.material.transport.band import Band
+from tegdesign.material.transport.band import Band, Edge, states_above
 from tegdesign.material.transport.constants import BOLTZMANN
 from tegdesign.material.transport.law import Law, above_zero, positive_at, temperatures
 from tegdesign.material.transport.neutrality import solve
@@ -160,7 +160,7 @@ class Bands:
         t, mu = np.broadcast_arrays(temperatures(temperature), np.asarray(chemical_potential, dtype=float))
         level = self._levels(t, mu)
         flat = level.reshape(len(self.bands), t.size)
-        return self._densities(t.ravel(), flat)[0].reshape(level.shape)
+        return self._densities(self._edges(t.ravel()), flat)[0].reshape(level.shape)
 
     def chemical_potential(self, temperature: ArrayLike, net_doping: ArrayLike) -> Array:
         """Return the chemical potential [J] from net doping [1/m^3] (donors less acceptors, all ionised) at
@@ -186,11 +186,13 @@ class Bands:
                 )
         flat_t, edge = t.ravel(), self.edges(t).reshape(len(self.bands), t.size)
 
-        def count(mu: Array, chosen: NDArray[np.intp]) -> tuple[Array, Array]:
-            level = self._signs * (mu - edge[:, chosen]) / (BOLTZMANN * flat_t[chosen])
-            return self._densities(flat_t[chosen], level)
+        signs, at_edge = self._signs, self._edges(flat_t)
 
-        return solve(count, flat_t, doping.ravel(), edge, self._signs[:, 0]).reshape(t.shape)
+        def count(mu: Array, chosen: NDArray[np.intp]) -> tuple[Array, Array]:
+            level = signs * (mu - edge[:, chosen]) / (BOLTZMANN * flat_t[chosen])
+            return self._densities([one.part(chosen) for one in at_edge], level)
+
+        return solve(count, flat_t, doping.ravel(), edge, signs[:, 0]).reshape(t.shape)
 
     def transport_distribution(self, energy: ArrayLike, temperature: float, chemical_potential: float) -> Array:
         """Return Xi [S/m] of every band, shape (B, ...), at electron energies [J], 0 in the gap.
@@ -199,7 +201,7 @@ class Bands:
         """
         e, t = np.asarray(energy, dtype=float), temperatures([temperature])
         level = self._levels(t, np.array([chemical_potential]))
-        around = self._surroundings(t, level, self._count(t, level, slopes=True), None)
+        around = self._surroundings(t, level, self._count(self._edges(t), level, slopes=True), None)
         result = np.zeros((len(self.bands), e.size))
         for b, (band, edge) in enumerate(zip(self.bands, self.edges(t), strict=True)):
             above = band.sign * (e.ravel() - edge) / (BOLTZMANN * t)
@@ -216,10 +218,13 @@ class Bands:
         signs = self._signs.reshape(-1, *([1] * t.ndim))
         return np.asarray(signs * (mu - self.edges(t)) / (BOLTZMANN * t))
 
-    def _count(self, t: Array, level: Array, slopes: bool) -> _Counted:
-        """Return quadrature, states and carriers of one block of points: temperatures (P,), levels (B, P)."""
+    def _edges(self, t: Array) -> list[Edge]:
+        return [band.edge(t) for band in self.bands]
+
+    def _count(self, edges: list[Edge], level: Array, slopes: bool) -> _Counted:
+        """Return quadrature, states and carriers of one block of points, levels (B, P)."""
         windows = [fermi_window(one) for one in level]
-        states = [band.states(t, w.energy) for band, w in zip(self.bands, windows, strict=True)]
+        states = [states_above(edge, w.energy) for edge, w in zip(edges, windows, strict=True)]
         density, slope = np.empty_like(level), np.zeros_like(level)
         for b, (band, window, state) in enumerate(zip(self.bands, windows, states, strict=True)):
             density[b] = np.einsum("pn,pn->p", window.weight, band.states_below(state))
@@ -227,11 +232,11 @@ class Bands:
                 slope[b] = np.einsum("pn,pn->p", window.weight, band.density_of_states(state))
         return _Counted(windows, states, density, slope)
 
-    def _densities(self, t: Array, level: Array) -> tuple[Array, Array]:
+    def _densities(self, edges: list[Edge], level: Array) -> tuple[Array, Array]:
         """Return carrier densities [1/m^3] and their change with the level [1/(J m^3)], shape (B, P) each."""
         density, slope = np.empty_like(level), np.empty_like(level)
-        for part in blocks(t.size):
-            counted = self._count(t[part], level[:, part], slopes=True)
+        for part in blocks(level.shape[1]):
+            counted = self._count([edge.part(part) for edge in edges], level[:, part], slopes=True)
             density[:, part], slope[:, part] = counted.density, counted.slope
         return density, slope
 
@@ -256,7 +261,7 @@ class Bands:
 
     def _block(self, t: Array, level: Array, grains: Array | None) -> tuple[Array, Array]:
         """Return densities (B, P) and conductance, distance, spread (3, B, P) of one block of points."""
-        counted = self._count(t, level, self._screened)
+        counted = self._count(self._edges(t), level, self._screened)
         around = self._surroundings(t, level, counted, grains)
         result = np.empty((3, *level.shape))
         for b, (band, window, state) in enumerate(zip(self.bands, counted.windows, counted.states, strict=True)):

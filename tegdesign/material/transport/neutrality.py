@@ -20,14 +20,14 @@ def solve(
     net_doping: Array,
     edge: Array,
     sign: Array,
-    tolerance: float = 1e-10,
+    tolerance: float = 1e-6,
     iterations: int = 80,
 ) -> Array:
     """Return the chemical potential [J], shape (P,), at which electrons less holes equal the net doping.
 
     Newton's method on ``ln(n + acceptors) - ln(p + donors)``, which rises steadily with mu and is nearly
-    straight both for few and for many carriers; a step that leaves the bracket found so far is replaced by
-    its middle.
+    straight both for few and for many carriers; from the second step on the change of its slope counts too
+    (Halley's method). A step that leaves the bracket found so far is replaced by its middle.
 
     Parameters
     ----------
@@ -40,7 +40,8 @@ def solve(
     edge, sign : ndarray, shapes (B, P) and (B,)
         Band edges [J]; 1 for conduction bands, -1 for valence bands.
     tolerance : float
-        Last Newton step in kT.
+        Last step in kT; what is left after it is less than its square, as the slope changes by less than
+        its own size in kT.
     iterations : int
         Limit on the steps.
 
@@ -55,6 +56,7 @@ def solve(
     unit = BOLTZMANN * temperature
     mu = _start(edge, electron, net_doping, unit)
     low, high = np.full_like(mu, -np.inf), np.full_like(mu, np.inf)
+    before, steepness = np.full_like(mu, np.nan), np.full_like(mu, np.nan)
     left = np.arange(mu.size)
     for _ in range(iterations):
         density, slope = count(mu[left], left)
@@ -64,8 +66,11 @@ def solve(
         up, down = n + np.maximum(-doping, 0.0), p + np.maximum(doping, 0.0)
         _refuse_empty(up, down, temperature[left])
         height = np.log(up / down)
-        step = -height / (dn / up + dp / down)
-        now = mu[left]
+        now, slope_now = mu[left], dn / up + dp / down
+        step = -height / slope_now
+        bending = step * (slope_now - steepness[left]) / (2 * slope_now * (now - before[left]))
+        step /= np.where(np.abs(bending) < 0.5, 1 + bending, 1.0)  # nan, so 1, in the first round
+        before[left], steepness[left] = now, slope_now
         low[left] = np.where(height <= 0, now, low[left])
         high[left] = np.where(height >= 0, now, high[left])
         target = now + step

@@ -11,7 +11,8 @@ from tegdesign.material.curve import Array
 
 # Below this beta the closed forms lose digits (error 1e-16 / beta^2); the series is right to 1e-14 there.
 _SERIES_BELOW = 0.01
-_TERMS = 8
+# Coefficients of (-beta)^k, k = 7..0, in the second moments of order 1 and 2.
+_SERIES = tuple(tuple(comb(k + order - 1, k) / (k + 3) for k in reversed(range(8))) for order in (1, 2))
 
 
 class Deflection:
@@ -76,8 +77,9 @@ class Deflection:
         second *= self._inverse
         if self._small.size:
             series = np.zeros_like(self._beta)
-            for k in reversed(range(_TERMS)):
-                series = series * -self._beta + comb(k + order - 1, k) / (k + 3)
+            for coefficient in _SERIES[order - 1]:
+                series *= -self._beta
+                series += coefficient
             before = 0.5 if order == 1 else self._first_order[0].ravel()[self._small]
             second.put(self._small, series)
             first.put(self._small, before - self._beta * series)
