@@ -33,7 +33,7 @@ def material(name: str, polarity: str, folder: str | None, made: Made | None = N
             f"materials.{polarity}: '{name}' is {found.polarity}-type; choose one of type {polarity} "
             f"(tegdesign materials --polarity {polarity} lists them)"
         )
-    return found if made is None or made.as_filed else made_of(found, made, polarity)
+    return found if made is None else made_of(found, made, polarity)
 
 
 def computed(found: Material, polarity: str) -> BandMaterial:
@@ -61,6 +61,8 @@ def made_of(found: Material, made: Made, polarity: str, tolerance: float = 1e-8)
     InputError
         It is a table of one sample, or the doping or grain size is out of its bounds.
     """
+    if made.as_filed:
+        return found
     from tegdesign.material.bands.crystal import Doping
 
     whole = computed(found, polarity)

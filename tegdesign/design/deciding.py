@@ -51,6 +51,10 @@ def only(job: Job, names: set[str]) -> Job:
 
 
 def with_their_own(job: Job, names: set[str]) -> set[str]:
-    """Return the names with the open circuits and starts that loads among them look at before they start."""
-    asking = {s.name for s in job.states if s.name in names and not s.of and s.load.limits()}
-    return names | {state.name for state in job.states if state.of in asking}
+    """Return the names with what loads look at: those with limits of their own bring open circuit and start along.
+
+    And the other way round: their limits are found from the loaded state.
+    """
+    asking = {state.name for state in job.states if not state.of and state.load.limits()}
+    asking &= names | {state.of for state in job.states if state.name in names}
+    return names | asking | {state.name for state in job.states if state.of in asking}

@@ -147,24 +147,29 @@ class _Maker:
 
     def made(self, side: str, x: Array) -> Made:
         """Return how the material of a side is made at x."""
-        whole = computed(self.base[side], side)
+        given = self.brief.materials.making(side).given
         own = {v.what: float(value) for v, value in zip(self.variables, x, strict=True) if v.side == side}
-        values: dict[str, Any] = {}
+        values: dict[str, Any] = {"doping": given.doping, "grain_size": given.grain_size}
         if {"doping", "grade"} & set(own):
+            whole = computed(self.base[side], side)
             low, high = whole.doping_bounds
             middle = np.exp(own["doping"]) if "doping" in own else whole.doping.cold
             if grade := own.get("grade", 0.0):
                 cold, hot = np.clip(middle * np.exp((-grade, grade)), low, high)
-                values = {"doping": cold, "doping_hot": hot, "graded_between": self.span}
+                values |= {"doping": cold, "doping_hot": hot, "graded_between": self.span}
             else:
-                values = {"doping": middle}
+                values["doping"] = middle
         if "grain size" in own:
             values["grain_size"] = np.exp(own["grain size"])
-        digits: Any = {k: v if k == "graded_between" else float(f"{v:.3g}") for k, v in values.items()}
-        return Made.model_construct(**digits)
+        if own:
+            short = ("doping", "doping_hot", "grain_size")
+            values |= {k: float(f"{values[k]:.3g}") for k in short if values.get(k) is not None}
+        return Made.model_construct(**values)
 
     def _material(self, side: str, x: Array) -> Material:
         made = self.made(side, x)
+        if made.as_filed:
+            return self.base[side]
         key = (side, repr(made))
         if key not in self.known:
             self.known[key] = made_of(self.base[side], made, side, _ROUGH)

@@ -5,17 +5,15 @@ from dataclasses import replace
 from tegdesign.design.caution import cautions
 from tegdesign.design.design import Design
 
+MATERIALS = {"n": "bismuth-telluride-n-se0.3", "p": "bismuth-telluride-p-sb1.58", "hold_outside_data": "30 K"}
+
 
 def design(**changes):
     data = {
         "title": "oven wall",
         "source": {"kind": "film", "temperature": "200 degC", "coefficient": "900 W/m2/K"},
         "sink": {"kind": "film", "temperature": "40 degC", "coefficient": "3000 W/m2/K"},
-        "materials": {
-            "n": "bismuth-telluride-n-se0.3",
-            "p": "bismuth-telluride-p-sb1.58",
-            "hold_outside_data": "30 K",
-        },
+        "materials": MATERIALS,
         "module": {
             "columns": 6,
             "rows": 6,

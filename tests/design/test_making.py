@@ -112,3 +112,19 @@ def test_best_doping_against_a_fine_scan(span):
 def test_best_doping_for_power_factor_is_heavier():
     material = find("magnesium-silicide-tin-n-bands")
     assert best_doping(material, 600.0, 600.0, power_factor)[0] > best_doping(material, 600.0, 600.0)[0]
+
+
+def test_what_is_given_stays_given():
+    # the other number of the same leg is free
+    chosen = size(
+        brief(p="half-heusler-p-fenbsb-bands", make_p={"free": ["grain size"], "doping": "1.6e21 1/cm^3"})
+    )
+    assert_allclose(chosen.design.materials.make_p.doping, 1.6e27)
+    assert_allclose(chosen.rating.materials[1].doping.cold, 1.6e27)
+    assert_allclose(chosen.objective, chosen.objective_before_rounding, rtol=0.05)
+
+
+def test_partner_may_be_a_table():
+    chosen = size(brief(n="lead-telluride-n", make_p={"free": ["doping"]}))
+    assert [choice.leg for choice in chosen.making.choices] == ["p"]
+    assert chosen.design.materials.make_n is None

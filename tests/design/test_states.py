@@ -162,3 +162,17 @@ def test_refuses(name):
     with pytest.raises(ValidationError) as caught:
         brief(*states)
     assert words in str(caught.value)
+
+
+def test_start_of_a_motor_is_held_in_a_state_that_only_its_open_circuit_brings_in():
+    # four states, so that some are left aside in the search; the motor must start in the weakest
+    load = {"kind": "motor", "resistance": "6 ohm", "stalled_resistance": "2 ohm", "start_voltage": "1.5 V"}
+    weak = {"name": "kindling", "source": {"inlet_temperature": "180 degC", "mass_flow": "8 g/s"}, "holds": []}
+    others = [
+        {"name": f"state {k}", "source": {"inlet_temperature": f"{t} degC"}, "holds": []}
+        for k, t in enumerate((300, 350, 450))
+    ]
+    rating = size(brief(weak, *others, load=load, require={"power": "5 W"})).rating
+    start = [c for c in rating.checks if c.state == "kindling, start"]
+    assert any(c.unit == "V" for c in start)
+    assert all(c.passed for c in start)

@@ -102,7 +102,6 @@ STATES = PLAIN | {
         {"name": "shorted", "load": "short"},
         {"name": "start of the week", "source": {"temperature": "60 degC"}, "holds": ["voltage"]},
         {"name": "other converter", "load": {"efficiency": 0.8}},
-        {"name": "thaw", "source": {"temperature": "10 degC"}, "sink": {"temperature": "30 degC"}, "holds": []},
         {"name": "by water", "sink": {"kind": "surface", "temperature": "45 degC"}},
     ],
 }  # fmt: skip

@@ -5,6 +5,8 @@ from matplotlib.figure import Figure
 from numpy.testing import assert_allclose
 
 from tegdesign.design.condition import OPEN
+from tegdesign.design.design import Design
+from tegdesign.design.rate import rate
 from tegdesign.errors import InputError
 from tegdesign.sheet import ladders, performance, states
 from tegdesign.sheet.section import Facts, Table
@@ -47,10 +49,21 @@ def test_what_differs_is_told(several):
         "shorted": f"load shorted; {only}",
         "start of the week": "source temperature 60 degC; of the requirements only voltage",
         "other converter": "load efficiency 0.8",
-        "thaw": "source temperature 10 degC, sink temperature 30 degC, so the sink is the hotter side, heat and voltage "
-        f"are reversed, which the load blocks; {only}",
         "by water": "sink surface, temperature 45 degC",
     }
+
+
+def test_a_reversed_state_is_told(several):
+    thaw = {"name": "thaw", "source": {"temperature": "10 degC"}, "sink": {"temperature": "30 degC"}}
+    data = several.design.model_dump(exclude_none=True)
+    for load, words in ((data["load"], ", which the load blocks"), ({"kind": "matched"}, "")):
+        rating = rate(Design.model_validate(data | {"load": load, "states": [thaw]}))
+        section = states.section_of_states(rating)
+        assert dict(blocks(section, Facts).pairs)["thaw"] == (
+            "source temperature 10 degC, sink temperature 30 degC, so the sink is the hotter side, heat and voltage are "
+            f"reversed{words}"
+        )
+        assert float(column(blocks(section, Table), "open [V]")["thaw"]) < 0
 
 
 def test_one_row_a_state(several, table):
@@ -142,7 +155,7 @@ def test_ladders_of_all_states(several):
         rtol=1e-12,
     )  # fmt: skip
     dashed = [line for line in axes.get_lines() if line.get_linestyle() == "--"]
-    assert len(dashed) == len(several.loaded) - 2  # those unplugged and blocked are open themselves
+    assert len(dashed) == len(several.loaded) - 1  # the unplugged one is open itself
     low, _ = axes.get_xlim()
     assert min(line.get_xdata()[0] for line in axes.get_lines()) > low
 

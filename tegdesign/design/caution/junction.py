@@ -146,7 +146,8 @@ def coolant_loss(rating: Rating) -> Iterator[Caution]:
     """Warn when the source alone, of any state, could bring the legs above a service limit once the coolant fails."""
     g = rating.design.module
     footprint, modules = np.array([g.width * g.depth]), np.array([float(g.modules)])
-    alone = [(float(c.source.law(footprint, modules).open_temperature[0]), c.name) for c in rating.loaded if not c.reversed]
+    laws = [(c.source.law(footprint, modules), c.name) for c in rating.loaded if not c.reversed]
+    alone = [(float(law.open_temperature[0]), name) for law, name in laws]
     reached, state = max(alone, key=lambda pair: pair[0])  # the first of equals, so rated where nothing is hotter
     m = min(rating.materials, key=lambda m: m.service_limit.value)
     if reached > m.service_limit.value:

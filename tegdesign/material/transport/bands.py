@@ -141,9 +141,12 @@ class Bands:
         flat_grains = None if grain_size is None else grains.ravel()
         density = np.empty((len(self.bands), t.size))
         result = np.empty((3, len(self.bands), t.size))
+        edges = self._edges(flat_t)
         for part in blocks(t.size):
             density[:, part], result[:, :, part] = self._block(
-                flat_t[part], flat_level[:, part], None if flat_grains is None else flat_grains[part]
+                [edge.part(part) for edge in edges],
+                flat_level[:, part],
+                None if flat_grains is None else flat_grains[part],
             )
         channels = tuple(Channel(*(value.reshape(t.shape) for value in result[:, b])) for b in range(len(self.bands)))
         return BandResponse(t, mu, channels, self.bands, density.reshape(level.shape), level)
@@ -259,10 +262,10 @@ class Bands:
     def _screened(self) -> bool:
         return any(mechanism.screened for band in self.bands for mechanism in band.scattering)
 
-    def _block(self, t: Array, level: Array, grains: Array | None) -> tuple[Array, Array]:
+    def _block(self, edges: list[Edge], level: Array, grains: Array | None) -> tuple[Array, Array]:
         """Return densities (B, P) and conductance, distance, spread (3, B, P) of one block of points."""
-        counted = self._count(self._edges(t), level, self._screened)
-        around = self._surroundings(t, level, counted, grains)
+        counted = self._count(edges, level, self._screened)
+        around = self._surroundings(edges[0].temperature[:, 0], level, counted, grains)
         result = np.empty((3, *level.shape))
         for b, (band, window, state) in enumerate(zip(self.bands, counted.windows, counted.states, strict=True)):
             result[:, b] = window.moments(band.distribution(state, around))

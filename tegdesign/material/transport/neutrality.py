@@ -20,7 +20,7 @@ def solve(
     net_doping: Array,
     edge: Array,
     sign: Array,
-    tolerance: float = 1e-6,
+    tolerance: float = 1e-7,
     iterations: int = 80,
 ) -> Array:
     """Return the chemical potential [J], shape (P,), at which electrons less holes equal the net doping.
