@@ -5,7 +5,7 @@ from __future__ import annotations
 import os
 from collections.abc import Callable, Iterator, Mapping
 from dataclasses import asdict, dataclass, replace
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -20,9 +20,10 @@ from tegdesign.design.rate import rate
 from tegdesign.design.rating import Check, Rating
 from tegdesign.design.rounding import Built, build
 from tegdesign.design.search import refine, search
-from tegdesign.design.space import Problems
+from tegdesign.design.space import Problems, score
 from tegdesign.errors import ConvergenceError, InputError
 from tegdesign.material.curve import Array
+from tegdesign.material.material import Material
 from tegdesign.quantity import write
 
 if TYPE_CHECKING:
@@ -38,6 +39,10 @@ UNIT_OF_AIM = {
 }
 
 AFTER_MAKING = 0.1  # of the box of the search: widest step once the materials are made
+_MISSED = -1e3  # score below which a limit or requirement is missed
+_SPARSE = 0.25  # fill factor below which a smaller plate is tried as well
+_SHRINK = (0.7, 0.5)  # of its sides
+_BETTER = 1e-3  # of the score, which is the logarithm of the aim
 _WAYS = 6  # connections of modules that are looked into
 
 
@@ -122,15 +127,43 @@ def size(brief: Brief | str | os.PathLike[str], *, progress: Callable[[float], N
     names = {side: _single(brief, side) for side in ("n", "p")}
     use = brief.materials
     pair = [material(name, side, use.folder, use.making(side).given) for side, name in names.items()]
-    whole = job_of(brief, pair)
-    ways = list(connections(brief))
-    count = len(ways)
-    problems = Problems(
-        np.zeros(count, dtype=np.intp),
-        np.ones(count, dtype=np.intp),
-        np.array([c[0] for c in ways], dtype=float),
-        np.array([c[1] for c in ways], dtype=float),
-    )
+    answer = _solve(brief, pair, progress)
+    # the search spreads the legs over the whole plate, so smaller ones are tried as long as that helps
+    while answer.score < _MISSED or answer.fill < _SPARSE or answer.brief is not None:
+        now = brief if answer.brief is None else answer.brief
+        plates = [b for share in _SHRINK if (b := _smaller(now, share)) is not None]
+        trials = (_solve(plate, pair, silent)._replace(brief=plate) for plate in plates)
+        better = next((trial for trial in trials if trial.score > answer.score + _BETTER), None)
+        if better is None:
+            break
+        answer = better
+    made = None if answer.making is None else answer.making.made
+    design = _design(brief, names, made, answer.built)
+    rating = rate(design)
+    exact = float(_objective(brief, rating))
+    binding = tuple(_binding(brief, design, rating))
+    return Sizing(brief, design, rating, binding, answer.free, exact, answer.making)
+
+
+class _Answer(NamedTuple):
+    """What was built, how its materials are made, the aim before rounding, score and fill factor as built.
+
+    ``brief`` is the one with a smaller plate that it answers, None where it is that of the user.
+    """
+
+    built: Built
+    making: Making | None
+    free: float
+    score: float
+    fill: float
+    brief: Brief | None = None
+
+
+def _solve(brief: Brief, pair: list[Material], progress: Callable[[float], None]) -> _Answer:
+    """Return the best buildable geometry that holds in every state, and how the materials are made for it."""
+    whole, ways = job_of(brief, pair), np.array(list(connections(brief)), dtype=float)
+    first = np.zeros(len(ways), dtype=np.intp)
+    problems = Problems(first, first + 1, ways[:, 0], ways[:, 1])
     states = deciding(brief, whole, problems)
     making: Making | None = None
     while True:  # until no state that was left aside is missed
@@ -139,7 +172,7 @@ def size(brief: Brief | str | os.PathLike[str], *, progress: Callable[[float], N
             raise ConvergenceError(
                 "no candidate of this brief has an operating point; widen limits.leg_length or check source and sink"
             )
-        if use.making("n").free or use.making("p").free:
+        if brief.materials.making("n").free or brief.materials.making("p").free:
             from tegdesign.design.making import make
 
             making = make(brief, only(whole, states), found, int(np.argmax(found.scores)))
@@ -150,15 +183,22 @@ def size(brief: Brief | str | os.PathLike[str], *, progress: Callable[[float], N
         if not forgotten:
             break
         states |= forgotten
-    ends = found.space.candidates(np.arange(found.scores.size), found.u)
-    free = evaluate(only(whole, states), ends, guess=found.guess)
-    design = _design(brief, names, None if making is None else making.made, built)
-    rating = rate(design)
-    exact = float(_objective(brief, rating))
-    return Sizing(
-        brief, design, rating, tuple(_binding(brief, design, rating)), float(free.objective[np.argmax(found.scores)]),
-        exact, making,
-    )  # fmt: skip
+    best = np.array([np.argmax(found.scores)])
+    free = evaluate(only(whole, states), found.space.candidates(best, found.u[best]), guess=found.guess.take(best))
+    c = built.candidates
+    legs = c.couples[0] * (c.side_n[0] ** 2 + c.side_p[0] ** 2)
+    value = float(score(brief, evaluate(whole, c.take([0])))[0])
+    return _Answer(built, making, float(free.objective[0]), value, float(legs / c.footprint[0]))
+
+
+def _smaller(brief: Brief, share: float) -> Brief | None:
+    """Return the brief with a share of the sides of its plate, None where no couple fits it any more."""
+    limits = brief.limits
+    width, depth = (side * share for side in limits.footprint)
+    cell, room = limits.leg_side[0] + limits.gap, (width - 2 * limits.edge_margin, depth - 2 * limits.edge_margin)
+    if min(room) < cell or max(room) < 2 * cell:
+        return None
+    return brief.model_copy(update={"limits": limits.model_copy(update={"footprint": (width, depth)})})
 
 
 def _one_of_each_series(problems: Problems, scores: Array) -> NDArray[np.intp]:

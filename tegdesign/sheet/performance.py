@@ -47,7 +47,8 @@ def verdict(rating: Rating) -> Section:
     said = Entry(f"NOT MET: {len(rating.failed)} of {total} limits and requirements are missed.", ())
     rows = [_row(c) for c in rating.failed]
     missed = table(("missed", "state", "value", "limit", "missed by"), rows, (0, 1))
-    return section("Verdict", said, missed, words(*mending(rating)))
+    mends = tuple(mending(rating)) if isinstance(rating, Rating) else ()  # rows and arrays pass here without margins
+    return section("Verdict", said, missed, *([words(*mends)] if mends else []))
 
 
 def limits(rating: Rating) -> Section:

@@ -186,7 +186,8 @@ def test_characters_of_other_scripts(plain):
 
 
 def test_write_sheet_chooses_by_suffix(tmp_path, plain, files, monkeypatch):
-    monkeypatch.setattr(pdf, "sheet_pdf", lambda rating: files["plain"])
+    made = files["plain"]
+    monkeypatch.setattr(pdf, "sheet_pdf", lambda rating: made)
     write_sheet(plain, tmp_path / "a.PDF")
     write_sheet(plain, tmp_path / "a.md")
     assert (tmp_path / "a.PDF").read_bytes() == files["plain"]

@@ -60,8 +60,8 @@ def test_a_reversed_state_is_told(several):
         rating = rate(Design.model_validate(data | {"load": load, "states": [thaw]}))
         section = states.section_of_states(rating)
         assert dict(blocks(section, Facts).pairs)["thaw"] == (
-            "source temperature 10 degC, sink temperature 30 degC, so the sink is the hotter side, heat and voltage are "
-            f"reversed{words}"
+            "source temperature 10 degC, sink temperature 30 degC, so the sink is the hotter side, heat and voltage "
+            f"are reversed{words}"
         )
         assert float(column(blocks(section, Table), "open [V]")["thaw"]) < 0
 

@@ -14,6 +14,7 @@ from tegdesign.material.curve import Array
 from tegdesign.material.transport.constants import BOLTZMANN, CHARGE, ELECTRON_MASS, HBAR
 from tegdesign.material.transport.law import Law, above_zero, at_temperature, positive_at
 from tegdesign.material.transport.scattering.states import Mechanism, States, Surroundings
+from tegdesign.material.transport.window import Window
 
 Carrier = Literal["electron", "hole"]
 
@@ -31,7 +32,8 @@ class Edge(NamedTuple):
 
     def part(self, chosen: slice | NDArray[np.intp]) -> Edge:
         """Return the same of some of the points."""
-        return Edge(*(value if value is None else value[chosen] for value in self))
+        bend = None if self.bend is None else self.bend[chosen]
+        return Edge(self.temperature[chosen], self.mass[chosen], self.inertial_mass[chosen], bend)
 
 
 @dataclass(frozen=True)
@@ -129,6 +131,18 @@ class Band:
         InputError
             Nothing scatters the carriers.
         """
+        return self._conduction_unit(states) * self._conduction(states, around)
+
+    def conduction(self, states: States, around: Surroundings, window: Window) -> tuple[Array, Array, Array]:
+        """Return conductance [S/m], mean distance [kT] and spread [S/m] of Xi over the window, shape (P,) each;
+        raises as ``distribution``.
+        """
+        conductance, distance, spread = window.moments(self._conduction(states, around))
+        unit = self._conduction_unit(states)[:, 0]
+        return conductance * unit, distance, spread * unit
+
+    def _conduction(self, states: States, around: Surroundings) -> Array:
+        """Return gamma^1.5 tau / gamma' [J^1.5 s]."""
         rate = self.scattering[0].rate(states, around)
         for mechanism in self.scattering[1:]:
             rate += mechanism.rate(states, around)
@@ -137,22 +151,27 @@ class Band:
                 f"scattering of {self.label} is 0 1/s but must be above 0 (ionised impurities alone do "
                 "that at zero net doping); give their density or a second mechanism"
             )
-        factor = self.degeneracy * CHARGE**2 / (3 * pi**2 * HBAR**3) * (2 * states.mass) ** 1.5
         rate *= states.slope
-        result = np.divide(states.volume, rate, out=rate)
-        result *= factor / states.inertial_mass
-        return result
+        return np.divide(states.volume, rate, out=rate)
 
-    def states_below(self, states: States) -> Array:
-        """Return the number of states between the edge and the energies [1/m^3]: N (2 m gamma)^1.5 / (3 pi^2
-        hbar^3).
+    def _conduction_unit(self, states: States) -> Array:
+        """Return what turns it into Xi, one value a point."""
+        return np.asarray(CHARGE**2 * self._states_unit(states) / states.inertial_mass)
+
+    def _states_unit(self, states: States) -> Array:
+        return np.asarray(self.degeneracy * (2 * states.mass) ** 1.5 / (3 * pi**2 * HBAR**3))
+
+    def carriers(self, states: States, window: Window) -> Array:
+        """Return the carriers of the window [1/m^3], shape (P,): the integral of the states below each energy,
+        N (2 m gamma)^1.5 / (3 pi^2 hbar^3).
         """
-        factor = self.degeneracy * (2 * states.mass) ** 1.5 / (3 * pi**2 * HBAR**3)
-        return np.asarray(factor * states.volume)
+        return np.asarray(self._states_unit(states)[:, 0] * window.integral(states.volume))
 
-    def density_of_states(self, states: States) -> Array:
-        """Return the density of states, both spins and all valleys [1/(J m^3)]."""
-        return np.asarray(2 * self.degeneracy * states.density)
+    def carriers_slope(self, states: States, window: Window) -> Array:
+        """Return the change of the carriers with the level [1/(J m^3)], shape (P,): the integral of the density
+        of states, both spins and all valleys.
+        """
+        return np.asarray(2 * self.degeneracy * window.integral(states.density))
 
     def edge_offset(self, temperature: Array) -> Array:
         """Return the offset of the edge [J] at temperatures [K], in their shape."""

@@ -230,9 +230,9 @@ class Bands:
         states = [states_above(edge, w.energy) for edge, w in zip(edges, windows, strict=True)]
         density, slope = np.empty_like(level), np.zeros_like(level)
         for b, (band, window, state) in enumerate(zip(self.bands, windows, states, strict=True)):
-            density[b] = np.einsum("pn,pn->p", window.weight, band.states_below(state))
+            density[b] = band.carriers(state, window)
             if slopes:
-                slope[b] = np.einsum("pn,pn->p", window.weight, band.density_of_states(state))
+                slope[b] = band.carriers_slope(state, window)
         return _Counted(windows, states, density, slope)
 
     def _densities(self, edges: list[Edge], level: Array) -> tuple[Array, Array]:
@@ -268,6 +268,6 @@ class Bands:
         around = self._surroundings(edges[0].temperature[:, 0], level, counted, grains)
         result = np.empty((3, *level.shape))
         for b, (band, window, state) in enumerate(zip(self.bands, counted.windows, counted.states, strict=True)):
-            result[:, b] = window.moments(band.distribution(state, around))
+            result[:, b] = band.conduction(state, around, window)
             result[1, b] *= band.sign
         return counted.density, result

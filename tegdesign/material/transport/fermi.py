@@ -34,5 +34,5 @@ def fermi_integral(order: float, level: ArrayLike, normalised: bool = False) -> 
     result = np.empty_like(flat)
     for part in blocks(flat.size):
         window = fermi_window(flat[part])
-        result[part] = np.einsum("pn,pn->p", window.weight, half_power(window.energy, order + 1))
+        result[part] = window.integral(half_power(window.energy, order + 1))
     return result.reshape(eta.shape) / (gamma(order + 2) if normalised else order + 1)

@@ -33,6 +33,10 @@ class Window(NamedTuple):
     distance: Array
     weight: Array
 
+    def integral(self, shape: Array) -> Array:
+        """Return the integral of a shape over the window."""
+        return np.asarray(np.einsum("...n,...n->...", self.weight, shape))
+
     def moments(self, shape: Array) -> tuple[Array, Array, Array]:
         """Return integral, mean distance [kT] and central second moment [kT^2] of a shape over the window.
 

@@ -99,6 +99,16 @@ def test_polar_optical_unscreened_limit():
     assert_allclose(PolarOptical(16.0, 9.0).rate(states(), few), expected, rtol=1e-9)
 
 
+def test_integrals_over_the_angle_are_shared_only_in_equal_surroundings():
+    more = Surroundings(2 * AROUND.net_density, 2 * AROUND.screening)
+    for mechanism in (IonisedImpurity(16.0), PolarOptical(16.0, 9.0), IonisedImpurity(18.0)):
+        for around in (AROUND, more):
+            used = states(0.2 * CHARGE)
+            for other in (AROUND, more):
+                IonisedImpurity(16.0).rate(used, other)
+            assert_allclose(mechanism.rate(used, around), mechanism.rate(states(0.2 * CHARGE), around), rtol=1e-14)
+
+
 # Outside reference: scipy.integrate.quad; both sides of the change from series to closed form.
 @pytest.mark.parametrize("order", [1, 2])
 @pytest.mark.parametrize("mixing", [0.0, 0.3, 0.5])

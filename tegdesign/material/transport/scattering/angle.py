@@ -24,6 +24,7 @@ class Deflection:
     """
 
     def __init__(self, beta: Array) -> None:
+        """Take beta and note where it is small."""
         self._small = np.flatnonzero(beta < _SERIES_BELOW)
         self._beta = beta.ravel()[self._small]
         self._above = np.maximum(beta, _SERIES_BELOW) if self._small.size else beta
