@@ -245,7 +245,7 @@ def array(
             *members.driven_backwards("module", run.backwards, run.value("power")),
             *members.by_mean_properties("module", run.exact),
         ),
-        notes=tuple(notes),
+        notes=(*notes, *members.left_out(design)),
     )
 
 

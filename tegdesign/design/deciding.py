@@ -7,7 +7,7 @@ from dataclasses import replace
 import numpy as np
 
 from tegdesign.design.brief import Brief
-from tegdesign.design.evaluate import Candidates, Evaluation, Job, evaluate
+from tegdesign.design.evaluate import Evaluation, Job, evaluate
 from tegdesign.design.space import Problems, Space
 
 _LOOKS = np.array([(length, 0.5, side, 0.7) for length in (0.05, 0.3, 0.6, 0.9) for side in (0.3, 0.9)])
@@ -38,9 +38,9 @@ def deciding(brief: Brief, job: Job, problems: Problems) -> set[str]:
     return with_their_own(job, chosen)
 
 
-def missed(job: Job, candidates: Candidates) -> set[str]:
+def missed(e: Evaluation) -> set[str]:
     """Return the names of the states in which the first candidate breaks a limit."""
-    e: Evaluation = evaluate(job, candidates.take([0]))
+    job = e.job
     broken = {limit.state for limit in e.limits if not limit.violation[0] <= 1e-6}
     return with_their_own(job, broken | {name for name, point in e.points.items() if not point.converged[0]})
 

@@ -15,6 +15,7 @@ from tegdesign.design.evaluate import Guess, Job, evaluate
 from tegdesign.design.parts import Made
 from tegdesign.design.search import Found, refine
 from tegdesign.design.space import Problems
+from tegdesign.errors import InputError
 from tegdesign.material.curve import Array
 from tegdesign.material.material import Material
 
@@ -123,10 +124,15 @@ class _Maker:
                 yield Variable(side, what, -_STEEPEST, _STEEPEST)
             elif what == "doping":
                 bounds = whole.doping_bounds
-                low, high = making.doping_bounds or bounds
-                low, high = max(low, bounds[0]), min(high, bounds[1])
-                yield Variable(side, what, *np.log((low, high)))
-            elif whole.grain_bounds is not None:
+                asked = making.doping_bounds or bounds
+                whole.check_doping(asked)
+                yield Variable(side, what, *np.log(asked))
+            elif whole.grain_bounds is None:
+                raise InputError(
+                    f"materials.make_{side}: grain size is free but {whole.name} has no grains in its model; leave "
+                    "it out"
+                )
+            else:
                 yield Variable(side, what, *np.log(whole.grain_bounds))
 
     def start(self) -> tuple[Array, dict[str, float]]:

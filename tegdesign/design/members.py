@@ -8,9 +8,12 @@ import numpy as np
 from numpy.typing import NDArray
 
 from tegdesign.design.caution.common import caution
+from tegdesign.design.condition import has_start
+from tegdesign.design.design import Design
 from tegdesign.design.parts import Require
 from tegdesign.design.rating import Caution, Check
 from tegdesign.design.wording import both, kelvin
+from tegdesign.errors import InputError
 from tegdesign.material.curve import Array
 from tegdesign.material.material import Material
 
@@ -119,3 +122,22 @@ def listed(members: Iterable[int]) -> str:
         else:
             runs.append([int(k), int(k)])
     return ", ".join(f"{a + 1}" if a == b else f"{a + 1} to {b + 1}" for a, b in runs)
+
+
+def left_out(design: Design) -> list[str]:
+    """Return what of a design is not looked at where its modules are told apart.
+
+    Raises
+    ------
+    InputError
+        The load must start first, which is a state of its own.
+    """
+    if has_start(design.load):
+        raise InputError(
+            f"load of kind '{design.load.kind}' must start before it runs, which is not looked at here; give a "
+            "resistance, and see tegdesign rate for the start"
+        )
+    notes = ["cautions here are of unequal modules; those of the design itself stand in tegdesign rate and the sheet"]
+    if design.states:
+        notes.append(f"its {len(design.states)} named states are not looked at here; tegdesign rate holds them")
+    return notes

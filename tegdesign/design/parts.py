@@ -69,7 +69,8 @@ class Stack(Part):
     """Parts of the module beside the legs. Defaults are typical figures of trade tables, none of any one maker.
 
     Interface 3e-5 m2 K/W (thin graphite foil or a thick grease line), alumina 24 W/m/K, copper 0.3 mm with the
-    resistivity of IEC 60028, stainless bolts 16 W/m/K, joints 2e-9 ohm m2 (laboratory value; bought modules about 3e-9).
+    resistivity of IEC 60028, joints 2e-9 ohm m2 (laboratory value; bought modules about 3e-9), bolts of stainless steel
+    16 W/m/K.
     """
 
     hot: Plate = Plate()

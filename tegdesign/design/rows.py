@@ -196,7 +196,7 @@ def rows(
             *members.driven_backwards("row", backwards, point.power[0]),
             *members.by_mean_properties("row", point.exact[0]),
         ),
-        notes=tuple(notes),
+        notes=(*notes, *members.left_out(design)),
     )
 
 

@@ -179,7 +179,10 @@ def _solve(brief: Brief, pair: list[Material], progress: Callable[[float], None]
             whole = replace(whole, materials=[made_of(m, making.made[m.polarity], m.polarity) for m in pair])
             found = refine(brief, only(whole, states), found.problems, found.u, found.guess, AFTER_MAKING)
         built = build(brief, found)
-        forgotten = missed(whole, built.candidates) - states
+        k = np.array([np.argmax(found.scores)])
+        near = found.guess.take(k) if len(states) == len(whole.states) else None
+        made = evaluate(whole, built.candidates.take([0]), guess=near)
+        forgotten = missed(made) - states
         if not forgotten:
             break
         states |= forgotten
@@ -187,8 +190,9 @@ def _solve(brief: Brief, pair: list[Material], progress: Callable[[float], None]
     free = evaluate(only(whole, states), found.space.candidates(best, found.u[best]), guess=found.guess.take(best))
     c = built.candidates
     legs = c.couples[0] * (c.side_n[0] ** 2 + c.side_p[0] ** 2)
-    value = float(score(brief, evaluate(whole, c.take([0])))[0])
-    return _Answer(built, making, float(free.objective[0]), value, float(legs / c.footprint[0]))
+    return _Answer(
+        built, making, float(free.objective[0]), float(score(brief, made)[0]), float(legs / c.footprint[0])
+    )
 
 
 def _smaller(brief: Brief, share: float) -> Brief | None:

@@ -36,7 +36,8 @@ class Ask:
     @classmethod
     def of(cls, condition: Condition, losses: Losses) -> Ask:
         """Return a required state of these conditions."""
-        return cls(condition.name, condition.source, condition.sink, condition.load, losses, reversed=condition.reversed)
+        c = condition
+        return cls(c.name, c.source, c.sink, c.load, losses, reversed=c.reversed)
 
 
 def solve(design: Design, asks: Sequence[Ask]) -> tuple[Modules, OperatingPoint]:
@@ -92,13 +93,14 @@ def state_of(design: Design, ask: Ask, modules: Modules, point: OperatingPoint, 
     ratio = g.modules_in_series / g.modules_in_parallel
     current = float(point.current[k]) * g.modules_in_parallel
     sign = -1.0 if ask.reversed else 1.0
+    told = f"{'reversed, the sink is the hotter side: ' * ask.reversed}{ask.load.words()}; "
     voltage = float(point.voltage[k]) * g.modules_in_series
     module_current = float(point.current[k])
     contacts = 2 * float(m.contacts[0]) * ratio
     leads = float(np.asarray(m.lead_resistance)[0])
     return State(
         name=ask.name,
-        conditions=f"{'reversed, the sink is the hotter side: ' * ask.reversed}{ask.load.words()}; source {ask.source.words()}; sink {ask.sink.words()}; steady",
+        conditions=f"{told}source {ask.source.words()}; sink {ask.sink.words()}; steady",
         power_W=voltage * current,
         delivered_power_W=voltage * current,
         voltage_V=sign * voltage,

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping, Sequence
 from typing import Annotated, Any, Literal
 
-from pydantic import Field
+from pydantic import Field, model_validator
 
 from tegdesign.design.condition import (
     EVERYTHING,
@@ -39,12 +39,21 @@ class StateEntry(Part):
     is the hotter side the state is reversed: the voltage has the other sign, and loads that block it stay open.
     """
 
-    name: Annotated[str, Field(min_length=1, max_length=40)]
+    name: Annotated[str, Field(min_length=1, max_length=40, pattern=r"^[^\n\r|]+$")]
     source: Change = Field(default_factory=dict)
     sink: Change = Field(default_factory=dict)
     load: Change | Literal["open", "short"] = Field(default_factory=dict)
     duration: Annotated[float, Measure("s", "min"), Field(gt=0)] | None = None
     holds: tuple[Held, ...] | None = None
+
+    @model_validator(mode="after")
+    def _sense(self) -> StateEntry:
+        if self.lost and self.holds:
+            raise ValueError(
+                f"state '{self.name}': the load is {self.load}, so {', '.join(self.holds)} cannot hold; leave out "
+                "holds or the load"
+            )
+        return self
 
     @property
     def lost(self) -> bool:

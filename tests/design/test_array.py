@@ -211,3 +211,9 @@ def test_batch_of_faults_falls_back_to_one_by_one(made, monkeypatch):
     assert [(f.module, f.fault, f.words) for f in lost] == [(2, "cold", "no operating point found")]
     assert "no operating point found" in array_report(a)
     assert np.isfinite([f.power_W for f in a.faults if f not in lost]).all()
+
+
+def test_motor_is_refused_since_it_must_start(made):
+    load = {"kind": "motor", "resistance": "6 ohm", "stalled_resistance": "2 ohm", "start_voltage": "1 V"}
+    with pytest.raises(InputError, match="must start before it runs"):
+        tegdesign.array(made(load=load))

@@ -96,6 +96,10 @@ def test_table_cannot_be_made_otherwise():
         size(brief(n="lead-telluride-n", make_n={"free": ["doping"]}))
     with pytest.raises(InputError, match="outside its bounds"):
         size(brief(make_n={"doping": "1e23 1/cm^3"}))
+    with pytest.raises(InputError, match="outside its bounds"):
+        size(brief(make_n={"free": ["doping"], "doping_bounds": ["1e10 1/cm^3", "2e19 1/cm^3"]}))
+    with pytest.raises(InputError, match="has no grains in its model"):
+        size(brief(n="magnesium-silicide-tin-n-bands", make_n={"free": ["grain size"]}))
 
 
 @pytest.mark.parametrize("span", [(600.0, 600.0), (330.0, 780.0)])

@@ -151,6 +151,8 @@ WRONG = {
     "unknown key": ([{"name": "x", "sink": {"coeficient": "12 W/m2/K"}}], "state 'x': unknown key: sink.coeficient"),
     "missing unit": ([{"name": "x", "sink": {"coefficient": 12}}], "state 'x': sink.coefficient: 12 has no unit"),
     "no difference": ([{"name": "x", "source": {"inlet_temperature": "40 degC"}}], "state 'x': source at 313.15 K"),
+    "lost load that holds": ([{"name": "x", "load": "open", "holds": ["power"]}], "the load is open, so power cannot"),
+    "name of two lines": ([{"name": "a\nb"}], "name"),
     "other load": ([{"name": "x", "load": "closed"}], "load"),
     "other kind": ([{"name": "x", "sink": {"kind": "surface"}}], "state 'x': missing key: sink.temperature"),
 }

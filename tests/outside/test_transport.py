@@ -6,11 +6,11 @@ import pytest
 from numpy.testing import assert_allclose
 from scipy.optimize import brentq, minimize_scalar
 
+from tegdesign.material.lorenz import lorenz_rule
 from tegdesign.material.transport.band import Band
 from tegdesign.material.transport.bands import Bands
 from tegdesign.material.transport.conductance import ConductanceFunction
 from tegdesign.material.transport.constants import BOLTZMANN, CHARGE, SEEBECK_UNIT
-from tegdesign.material.lorenz import lorenz_rule
 from tegdesign.material.transport.derived import (
     level_from_seebeck,
     quality_factor,

@@ -91,6 +91,10 @@ class BandMaterial(Material):
             thermal_conductivity=kappa,
         )  # fmt: skip
 
+    def check_doping(self, values: Sequence[float]) -> None:
+        """Refuse dopings [1/m^3] outside the bounds of the material."""
+        check_doping(self.name, values, self.doping_bounds)
+
     def _check_grain(self, grain_size: float) -> None:
         if self.grain_bounds is None:
             raise InputError(f"{self.name}: grain size {grain_size * 1e9:.6g} nm was given but its model has no grains")
