@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
-from tegdesign.cli import output
+from tegdesign.cli import lists, output
 from tegdesign.errors import InputError
 
 if TYPE_CHECKING:
@@ -95,7 +95,7 @@ def rate(
         sweep.column(of)
         picture = "map"
     else:
-        hots, colds = _temperatures("--hot", hot), _temperatures("--cold", cold)
+        hots, colds = lists.temperatures("--hot", hot), lists.temperatures("--cold", cold)
         sweep = operating_table(made, hot=hots, cold=colds, loads=_loads(load, current))
         picture = ""
     if figure is not None:
@@ -157,50 +157,23 @@ def _text(sweep: Sweep, form: output.Style, of: str) -> str:
     return sweep_table(sweep, of)
 
 
-def _list(option: str, text: str | None) -> list[str]:
-    parts = [part.strip() for part in text.split(",")] if text else []
-    if any(not part for part in parts):
-        raise InputError(
-            f"{option}: list '{text}' has an empty place; write values with units, parted by commas"
-        )
-    return parts
-
-
-def _parse(option: str, part: str, unit: str, mend: str = "") -> float:
-    from tegdesign.quantity import parse
-
-    try:
-        return parse(part, unit)
-    except InputError as error:
-        raise InputError(f"{option}: {error}{mend}") from error
-
-
-def _temperatures(option: str, text: str | None) -> list[float]:
-    parts = _list(option, text)
-    values = [_parse(option, part, "K") for part in parts]
-    for part, value in zip(parts, values, strict=True):
-        if not 0 < value < 4000:
-            raise InputError(f"{option}: '{part}' is {value:g} K, outside 0 K..4000 K; mend it")
-    return values
-
-
 def _loads(load: str | None, current: str | None) -> list[AnyLoad]:
     from tegdesign.quantity import SI
     from tegdesign.system.load import BestEfficiency, GivenCurrent, Matched, Resistance
 
     found: list[AnyLoad] = []
-    for part in _list("--load", load):
+    for part in lists.parts("--load", load):
         if part == "matched":
             found.append(Matched())
         elif part == "efficiency":
             found.append(BestEfficiency())
         else:
-            value = _parse("--load", part, "ohm", ", nor matched or efficiency")
+            value = lists.value("--load", part, "ohm", ", nor matched or efficiency")
             if value <= 0:
                 raise InputError(f"--load: '{part}' must be above 0 ohm")
             found.append(Resistance(resistance=SI(value)))
-    for part in _list("--current", current):
-        value = _parse("--current", part, "A")
+    for part in lists.parts("--current", current):
+        value = lists.value("--current", part, "A")
         if value < 0:
             raise InputError(f"--current: '{part}' must be 0 A or more")
         found.append(GivenCurrent(current=SI(value)))
@@ -211,7 +184,7 @@ def _axis(text: str) -> tuple[str, list[str | float]]:
     key, mark, values = text.partition("=")
     if not mark or not values.strip():
         raise InputError(f"--map: '{text}' is not KEY=LIST, like \"module.leg_length=1 mm, 2 mm\"")
-    return key.strip(), [_number(part) for part in _list("--map", values)]
+    return key.strip(), [_number(part) for part in lists.parts("--map", values)]
 
 
 def _number(text: str) -> str | float:

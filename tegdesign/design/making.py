@@ -36,6 +36,17 @@ class Variable(NamedTuple):
 
 
 @dataclass(frozen=True)
+class Grains:
+    """What the grain size does at the mean temperature of the leg, beside that of the file of the material."""
+
+    T_K: float
+    lattice_thermal_conductivity_W_per_m_K: float
+    lattice_thermal_conductivity_as_filed_W_per_m_K: float
+    mobility_m2_per_V_s: float
+    mobility_as_filed_m2_per_V_s: float
+
+
+@dataclass(frozen=True)
 class Choice:
     """What was chosen for the material of a leg, and the doping that the mean figure of merit alone would ask for.
 
@@ -49,6 +60,7 @@ class Choice:
     doping_hot_per_m3: float | None = None
     doping_for_figure_of_merit_per_m3: float | None = None
     grain_size_m: float | None = None
+    grains: Grains | None = None
 
 
 @dataclass(frozen=True)
@@ -172,6 +184,22 @@ class _Maker:
             values |= {k: float(f"{values[k]:.3g}") for k in short if values.get(k) is not None}
         return Made.model_construct(**values)
 
+    def grains(self, side: str, made: Made) -> Grains | None:
+        """Return what the grain size of a side does, None where it was not free; both at the doping chosen."""
+        if not any(v.side == side and v.what == "grain size" for v in self.variables):
+            return None
+        from tegdesign.material.transport.constants import CHARGE
+
+        t = np.array([sum(self.span) / 2])
+        at = []
+        for grain in (made.grain_size, computed(self.base[side], side).grain_size):
+            whole = computed(made_of(self.base[side], made.model_copy(update={"grain_size": grain}), side), side)
+            response = whole.response(t)
+            carriers = response.electron_density if side == "n" else response.hole_density
+            mobility = response.conductivity / (CHARGE * carriers)
+            at.append((float(whole.lattice_thermal_conductivity(t)[0]), float(mobility[0])))
+        return Grains(float(t[0]), at[0][0], at[1][0], at[0][1], at[1][1])
+
     def _material(self, side: str, x: Array) -> Material:
         made = self.made(side, x)
         if made.as_filed:
@@ -254,7 +282,7 @@ def make(brief: Brief, job: Job, found: Found, which: int) -> Making:
     choices = tuple(
         Choice(
             side, maker.base[side].name, made[side].doping, made[side].doping_hot, best_for_merit.get(side),
-            made[side].grain_size,
+            made[side].grain_size, maker.grains(side, made[side]),
         )
         for side in ("n", "p")
         if any(v.side == side for v in maker.variables)

@@ -86,6 +86,14 @@ def making(made: Making) -> Section:
             f"The grade along the legs gains {amount(grade, 'W')} ({share}) of it." if grade > 0
             else "A grade along the legs gains nothing (0 W): even legs are as good, so they are even."
         )  # fmt: skip
+    for c in made.choices:
+        if (g := c.grains) is not None:
+            lattice, filed = g.lattice_thermal_conductivity_W_per_m_K, g.lattice_thermal_conductivity_as_filed_W_per_m_K
+            said.append(
+                f"Grains of the {c.leg} leg at {celsius(g.T_K)}: lattice conductivity {number(lattice)} W/m/K (as "
+                f"filed {number(filed)}), mobility {number(1e4 * g.mobility_m2_per_V_s)} cm2/V/s (as filed "
+                f"{number(1e4 * g.mobility_as_filed_m2_per_V_s)})."
+            )
     heads = ("leg", "material", "doping, cold end", "hot end", "for best mean zT", "grain size")
     return section("Materials made for this brief", table(heads, rows, (0, 1)), words(*said))
 

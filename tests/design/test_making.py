@@ -77,6 +77,11 @@ def test_grade_gains_or_is_left_out():
 def test_grain_size_is_chosen_within_its_bounds():
     material = find("half-heusler-p-fenbsb-bands")
     chosen = size(brief(p="half-heusler-p-fenbsb-bands", make_p={"free": ["grain size"]}))
+    grains = chosen.making.choices[0].grains
+    finer = chosen.making.choices[0].grain_size_m < material.grain_size
+    lattice, filed = (getattr(grains, f"lattice_thermal_conductivity_{end}W_per_m_K") for end in ("", "as_filed_"))
+    assert finer == (lattice < filed)
+    assert finer == (grains.mobility_m2_per_V_s < grains.mobility_as_filed_m2_per_V_s)
     low, high = material.grain_bounds
     grain = chosen.rating.materials[1].grain_size
     assert low <= grain <= high
