@@ -79,7 +79,6 @@ def list_materials(
         if any(given):
             raise typer.BadParameter(f"options of '{context.invoked_subcommand}' go behind it")
         return
-    from tegdesign.material.bands import view
     from tegdesign.material.file import KINDS
     from tegdesign.quantity import parse
 
@@ -93,7 +92,7 @@ def list_materials(
         tags = set(material.hazard_tags)
         if (
             polarity in (None, material.polarity)
-            and kind in (None, view.kind(material))
+            and kind in (None, material.kind)
             and (span is None or (material.range[0] <= span[0] and span[1] <= material.range[1]))
             and material.service_limit.value >= limit
             and tags >= set(with_ or ())
@@ -177,9 +176,8 @@ _SUMMARY = (
 def _summary(material: Material) -> dict[str, Any]:
     import numpy as np
 
-    from tegdesign.material.bands import view
 
-    kind = view.kind(material)
+    kind = material.kind
     fine = None if kind == "table" else np.linspace(*material.range, 201)  # no measured points to choose from
     table = material.properties(fine)
     peak = int(np.nanargmax(table["figure_of_merit"]))

@@ -9,7 +9,6 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from tegdesign.material.bands.material import BandMaterial
-from tegdesign.material.bands.view import kind
 from tegdesign.material.curve import Array, Curve
 from tegdesign.material.material import Material
 from tegdesign.sheet.drawing import check_ending, save_drawing
@@ -36,7 +35,7 @@ def figure(material: Material, measured: Material | None = None) -> Figure:
 
     drawing = Figure(figsize=(8.0, 7.2), layout="constrained")
     panels = drawing.subplots(2, 2, sharex=True).flat
-    computed = kind(material) == "bands"
+    computed = material.kind == "bands"
     for axes, (name, label, factor) in zip(panels, PANELS, strict=True):
         function = getattr(material, name)
         points, ends = _measured(material, name)

@@ -6,7 +6,6 @@ import textwrap
 from collections.abc import Mapping, Sequence
 from typing import Any
 
-from tegdesign.material.bands import view
 from tegdesign.material.bands.describe import words
 from tegdesign.material.bands.material import BandMaterial
 from tegdesign.material.material import Material
@@ -99,7 +98,7 @@ def card(material: Material, told: Mapping[str, Any]) -> str:
     air = material.air_limit
     entries = [
         ("composition", material.composition),
-        ("kind", view.kind(material)),
+        ("kind", material.kind),
         ("polarity", material.polarity),
         *(("warning", warning) for warning in material.warnings),
         ("known", f"from {material.range[0]:g} K to {material.range[1]:g} K"),

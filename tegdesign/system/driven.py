@@ -16,7 +16,7 @@ from tegdesign.module.module import Flows, Modules, flows
 from tegdesign.system.law import Law
 from tegdesign.system.load.base import LoadLaw, MixedLoads
 from tegdesign.system.load.given import as_given
-from tegdesign.system.operating_point import OperatingPoint, _couple_at, operating_point
+from tegdesign.system.operating_point import OperatingPoint, mean_couple, operating_point
 
 Guess = tuple[Array, Array, Array]
 _LOOSE = 1e-6  # tolerance for modules whose temperature difference is near the rounding of temperatures
@@ -212,7 +212,7 @@ def _mean_flows(modules: Modules, hot: Array, cold: Array, current: Array) -> Fl
     Derivatives of the properties are left out of the slopes.
     """
     i = current
-    seebeck, series, conductance = _couple_at(modules, (hot + cold) / 2, hot, cold)
+    seebeck, series, conductance = mean_couple(modules, (hot + cold) / 2, hot, cold)
     legs = series - 2 * modules.contacts - modules.lead_resistance
     metal = [
         resistivity_at(t, modules.electrode_resistivity, modules.electrode_coefficient) * modules.electrode_paths

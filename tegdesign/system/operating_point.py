@@ -78,7 +78,7 @@ def first_guess(modules: Modules, source: Law, sink: Law) -> tuple[Array, Array,
         source = given[0].tangent(hot + modules.resistance_hot * heat, heat)
         sink = given[1].tangent(cold - modules.resistance_cold * heat, -heat)
         mean, difference = (hot + cold) / 2, np.maximum(hot - cold, 1.0)
-        seebeck, resistance, conductance = _couple_at(modules, mean, hot, cold)
+        seebeck, resistance, conductance = mean_couple(modules, mean, hot, cold)
         zt = seebeck**2 * mean / (resistance * conductance)
         passing = modules.bypass(hot, np.minimum(cold, hot - 1.0))[0] / difference
         k = conductance * (1 + zt / 2) + np.maximum(passing, 0.0)
@@ -97,7 +97,7 @@ def first_guess(modules: Modules, source: Law, sink: Law) -> tuple[Array, Array,
     return hot, cold, current
 
 
-def _couple_at(modules: Modules, mean: Array, hot: Array, cold: Array) -> tuple[Array, Array, Array]:
+def mean_couple(modules: Modules, mean: Array, hot: Array, cold: Array) -> tuple[Array, Array, Array]:
     """Return Seebeck coefficient, resistance and conductance of the modules at mean properties."""
     seebeck, resistance, conductance = np.zeros(mean.shape), np.zeros(mean.shape), np.zeros(mean.shape)
     for which, area, sign in ((modules.n, modules.area_n, -1.0), (modules.p, modules.area_p, 1.0)):
@@ -348,4 +348,4 @@ def _insist(point: OperatingPoint, known: NDArray[np.bool_]) -> None:
     )
 
 
-__all__ = ["OperatingPoint", "Slopes", "first_guess", "operating_point"]
+__all__ = ["OperatingPoint", "Slopes", "first_guess", "mean_couple", "operating_point"]

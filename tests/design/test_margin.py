@@ -152,7 +152,8 @@ def test_a_search_that_ends_says_so():
     assert outside.value == outside.now
     assert "data point" in outside.limit
     film = next(b for b in rated(changed(BUILT, {})).margins.break_even if b.key == "sink_coefficient_W_per_m2_K")
-    assert film.reached or film.value == pytest.approx(0.01 * film.now, rel=1e-9)
+    if not film.reached:  # the search ends at a hundredth of what it is now
+        assert_allclose(film.value, 0.01 * film.now, rtol=1e-9)
 
 
 def test_a_converter_that_stops_is_found_at_its_jump():

@@ -28,11 +28,6 @@ _STEP = 50.0  # [K] between the temperatures at which a computed material is sho
 _AIMS = {"figure of merit": figure_of_merit, "power factor": power_factor}
 
 
-def kind(material: Material) -> str:
-    """Return the kind of file a material comes from: ``bands`` when it is computed, ``table`` when measured."""
-    return material.kind
-
-
 def computed(material: Material, wish: str) -> BandMaterial:
     """Return the material as one whose doping can be chosen.
 
